@@ -1,0 +1,1 @@
+"""Which face mill, and why: a rule-based adviser for face milling."""

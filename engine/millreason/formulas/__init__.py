@@ -1,0 +1,1 @@
+"""The mathematics of face milling as pure functions, one module per topic."""
