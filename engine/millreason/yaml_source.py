@@ -151,7 +151,7 @@ class _Reader:
 
     def _scalar(self, event: yaml.ScalarEvent, shown: str) -> Any:
         text = event.value
-        if event.style is not None:
+        if event.style:  # quoted or block text
             return text
         if text in _WORDS:
             return _WORDS[text]
