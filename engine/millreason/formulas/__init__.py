@@ -1,1 +1,1 @@
-"""The mathematics of face milling as pure functions, one module per topic."""
+"""Formulas of face milling: pure functions, one module for each subject, units in every name."""
