@@ -82,6 +82,12 @@ def rake(quantity: str, value: float) -> float:
     return inside(f"{quantity} [deg]", value, -90.0, 90.0)
 
 
+def kienzle_exponent(value: float) -> float:
+    """Return the exponent mc of a force law, from zero to below one."""
+    slope = not_negative("exponent mc", value)
+    return slope and inside("exponent mc", slope, 0.0, 1.0)
+
+
 def arc_ends(entry_deg: float, exit_deg: float) -> tuple[float, float]:
     """Return entry and exit angle, with 0 <= entry < exit <= 180 degrees."""
     leave = above_up_to("exit angle [deg]", exit_deg, 0.0, 180.0)
