@@ -105,7 +105,7 @@ def registry() -> UnitRegistry:
     from pint import UnitRegistry as Registry
 
     units: UnitRegistry = Registry(None)
-    units.load_definitions(line for line in _DEFINITIONS.splitlines() if line)
+    units.load_definitions([line for line in _DEFINITIONS.splitlines() if line])
     return units
 
 
