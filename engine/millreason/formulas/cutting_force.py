@@ -89,7 +89,7 @@ def specific_cutting_force(
     Examples
     --------
     >>> round(specific_cutting_force(1400, 0.4, 0.0430331), 0)
-    4929.0
+    4927.0
 
     References
     ----------

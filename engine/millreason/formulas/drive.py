@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Sequence
 from dataclasses import dataclass
+from itertools import pairwise
 
 from millreason.errors import OutOfRangeError
 from millreason.formulas import _checks as check
@@ -427,7 +428,7 @@ def _checked_curve(points: Curve) -> list[tuple[float, float]]:
     ]
     if not curve:
         raise OutOfRangeError("points of the power curve", "none", "one or more")
-    for (slower, _), (faster, _) in zip(curve, curve[1:], strict=False):
+    for (slower, _), (faster, _) in pairwise(curve):
         if faster <= slower:
             raise OutOfRangeError("speed on the curve [1/min]", faster, f"above the one before, {slower:g}")
     return curve

@@ -88,8 +88,9 @@ def peak_torque(
 
     Examples
     --------
-    >>> peak_torque(4, 45, 135, 3, 0.2, 45, 100, 1700, 0.25).teeth
-    1
+    >>> load = peak_torque(6, 45, 135, 3, 0.2, 45, 100, 1700, 0.25)
+    >>> round(load.tangential_force_n), load.teeth
+    (3202, 2)
 
     References
     ----------
@@ -101,7 +102,7 @@ def peak_torque(
     edge = _edge_force(depth_mm, feed_per_tooth_mm, kappa_deg, kc11_n_mm2, slope, factor)
     lever = check.positive("cutter diameter [mm]", diameter_mm) / 2000.0
     pitch = 360.0 / number
-    # Slack: an arc of whole pitches holds one tooth more for an instant only, at its two ends.
+    # An arc of whole pitches does hold one tooth more for an instant, at its two ends.
     most = min(number, math.floor((leave - entry) / pitch * (1.0 + check.ROUNDING)) + 1)
     share, carrying = max((_group_share(n, entry, leave, pitch, slope), n) for n in range(1, most + 1))
     return PeakLoad(edge * share, edge * share * lever, carrying)
