@@ -88,6 +88,11 @@ def kienzle_exponent(value: float) -> float:
     return slope and inside("exponent mc", slope, 0.0, 1.0)
 
 
+def taylor_exponent(value: float) -> float:
+    """Return the exponent n of a tool-life law, above zero and below one."""
+    return inside("Taylor exponent n", positive("Taylor exponent n", value), 0.0, 1.0)
+
+
 def arc_ends(entry_deg: float, exit_deg: float) -> tuple[float, float]:
     """Return entry and exit angle, with 0 <= entry < exit <= 180 degrees."""
     leave = above_up_to("exit angle [deg]", exit_deg, 0.0, 180.0)

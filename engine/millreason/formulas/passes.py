@@ -37,7 +37,7 @@ __all__ = [
 
 
 def passes_across(width_mm: float, diameter_mm: float, overlap_mm: float, largest_ratio: float) -> int:
-    """Passes side by side: the fewest N with ``(W + (N - 1) overlap) / N <= ratio D``.
+    """Count of passes side by side: the fewest N with ``(W + (N - 1) overlap) / N <= ratio D``.
 
     Parameters
     ----------

@@ -25,7 +25,9 @@ class TiltWindow:
 def tilt_dish(
     tilt_mm_m: float, diameter_mm: float, width_mm: float, entry_gap_mm: float | None = None
 ) -> float:
-    """Depth of the dish left by a tilt along the feed: ``sin theta (sqrt(R^2 - y_min^2) - sqrt(R^2 - y_max^2))``.
+    """Depth of the dish that a tilt along the feed leaves.
+
+    ``sin theta (sqrt(R^2 - y_min^2) - sqrt(R^2 - y_max^2))``.
 
     Parameters
     ----------

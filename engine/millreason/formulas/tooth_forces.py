@@ -90,7 +90,7 @@ def peak_torque(
     --------
     >>> load = peak_torque(6, 45, 135, 3, 0.2, 45, 100, 1700, 0.25)
     >>> round(load.tangential_force_n), load.teeth
-    (3202, 2)
+    (2986, 2)
 
     References
     ----------

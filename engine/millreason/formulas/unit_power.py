@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from millreason.errors import OutOfRangeError
 from millreason.formulas import _checks as check
 
 
@@ -193,6 +192,4 @@ def power_band(power_kw: float, low_ratio: float, high_ratio: float, wear_factor
     """
     wear = check.between("wear factor", wear_factor, 1.0, check.LARGEST)
     sharp = constant_band(power_kw, low_ratio, high_ratio)
-    if sharp.high * wear > check.LARGEST:
-        raise OutOfRangeError("wear factor", wear_factor, "a factor of ordinary size")
     return Band(sharp.low, sharp.likely, sharp.high * wear)
