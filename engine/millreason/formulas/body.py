@@ -1,4 +1,4 @@
-"""Machine and body limits: diameters, speeds and feeds, mass and tip moment, loads from rotation."""
+"""Machine and body limits: diameters, mass and tip moment; speeds and loads from turning beside them."""
 
 from __future__ import annotations
 
@@ -7,6 +7,24 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 from millreason.formulas import _checks as check
+from millreason.formulas.motion import cutting_speed, removal_rate, spindle_speed, table_feed
+from millreason.formulas.rotation import hoop_stress, insert_screw_load, permissible_unbalance
+
+__all__ = [
+    "Assembly",
+    "body_mass",
+    "combined_mass",
+    "cutting_speed",
+    "diameter_at_depth",
+    "hoop_stress",
+    "insert_screw_load",
+    "outermost_diameter",
+    "permissible_unbalance",
+    "removal_rate",
+    "spindle_speed",
+    "table_feed",
+    "tip_moment",
+]
 
 STANDARD_GRAVITY_M_S2 = 9.80665
 
@@ -17,158 +35,6 @@ class Assembly:
 
     mass_kg: float
     centre_mm: float
-
-
-def spindle_speed(cutting_speed_m_min: float, diameter_mm: float) -> float:
-    """Spindle speed for a cutting speed: ``n = 1000 vc / (pi D)``.
-
-    Parameters
-    ----------
-    cutting_speed_m_min : float
-        Cutting speed vc [m/min].
-    diameter_mm : float
-        Diameter D that cuts [mm].
-
-    Returns
-    -------
-    float
-        Spindle speed [1/min].
-
-    Raises
-    ------
-    OutOfRangeError
-        If a value is not finite and above zero.
-
-    Notes
-    -----
-    Exact; shop rules with rounded constants come out 0.5 to 5 % higher.
-
-    Examples
-    --------
-    >>> round(spindle_speed(30, 75), 1)
-    127.3
-
-    References
-    ----------
-    groover-manufacturing, machinerys-handbook-27
-    """
-    speed = check.positive("cutting speed [m/min]", cutting_speed_m_min)
-    return 1000.0 * speed / (math.pi * check.positive("cutter diameter [mm]", diameter_mm))
-
-
-def cutting_speed(spindle_speed_rpm: float, diameter_mm: float) -> float:
-    """Cutting speed at a spindle speed: ``vc = pi D n / 1000``.
-
-    Parameters
-    ----------
-    spindle_speed_rpm : float
-        Spindle speed n [1/min].
-    diameter_mm : float
-        Diameter D that cuts [mm].
-
-    Returns
-    -------
-    float
-        Cutting speed [m/min].
-
-    Raises
-    ------
-    OutOfRangeError
-        If a value is not finite and above zero.
-
-    Notes
-    -----
-    The feed motion is neglected.
-
-    Examples
-    --------
-    >>> round(cutting_speed(660, 63), 1)
-    130.6
-
-    References
-    ----------
-    groover-manufacturing
-    """
-    speed = check.positive("spindle speed [1/min]", spindle_speed_rpm)
-    return math.pi * check.positive("cutter diameter [mm]", diameter_mm) * speed / 1000.0
-
-
-def table_feed(feed_per_tooth_mm: float, teeth: int, spindle_speed_rpm: float) -> float:
-    """Feed rate of the table: ``vf = fz z n``.
-
-    Parameters
-    ----------
-    feed_per_tooth_mm : float
-        Feed per tooth fz [mm].
-    teeth : int
-        Number of effective teeth z [-].
-    spindle_speed_rpm : float
-        Spindle speed n [1/min].
-
-    Returns
-    -------
-    float
-        Feed rate [mm/min].
-
-    Raises
-    ------
-    OutOfRangeError
-        If a value is not finite and above zero, or the teeth are not a whole number.
-
-    Notes
-    -----
-    Count effective edges, not inserts.
-
-    Examples
-    --------
-    >>> round(table_feed(0.15, 6, 1000), 6)
-    900.0
-
-    References
-    ----------
-    groover-manufacturing
-    """
-    feed = check.positive("feed per tooth [mm]", feed_per_tooth_mm) * check.count("number of teeth", teeth)
-    return feed * check.positive("spindle speed [1/min]", spindle_speed_rpm)
-
-
-def removal_rate(depth_mm: float, width_mm: float, table_feed_mm_min: float) -> float:
-    """Volume removed in unit time: ``Q = ap ae vf / 1000``.
-
-    Parameters
-    ----------
-    depth_mm : float
-        Depth of cut ap [mm].
-    width_mm : float
-        Width of cut ae [mm].
-    table_feed_mm_min : float
-        Feed rate vf [mm/min].
-
-    Returns
-    -------
-    float
-        Removal rate [cm3/min].
-
-    Raises
-    ------
-    OutOfRangeError
-        If a value is not finite and above zero.
-
-    Notes
-    -----
-    At full width; entry and exit remove less.
-
-    Examples
-    --------
-    >>> removal_rate(3, 60, 600)
-    108.0
-
-    References
-    ----------
-    kalpakjian-schmid
-    """
-    area = check.positive("depth of cut [mm]", depth_mm) * check.positive("width of cut [mm]", width_mm)
-    return area * check.positive("feed rate [mm/min]", table_feed_mm_min) / 1000.0
 
 
 def diameter_at_depth(diameter_mm: float, depth_mm: float, kappa_deg: float) -> float:
@@ -373,117 +239,3 @@ def tip_moment(mass_kg: float, centre_mm: float) -> float:
     """
     lever = check.not_negative("centre of mass [mm]", centre_mm) / 1000.0
     return check.positive("mass [kg]", mass_kg) * STANDARD_GRAVITY_M_S2 * lever
-
-
-def insert_screw_load(insert_mass_kg: float, radius_mm: float, spindle_speed_rpm: float) -> float:
-    """Outward load of a rotating insert: ``F = m omega^2 r``.
-
-    Parameters
-    ----------
-    insert_mass_kg : float
-        Mass of the insert, with a cartridge where there is one [kg].
-    radius_mm : float
-        Radius of its centre of mass [mm].
-    spindle_speed_rpm : float
-        Spindle speed n [1/min].
-
-    Returns
-    -------
-    float
-        Load on screw or wedge [N].
-
-    Raises
-    ------
-    OutOfRangeError
-        If a value is not finite and above zero.
-
-    Notes
-    -----
-    Grows with the square of the speed; the limit marked on the body decides.
-
-    Examples
-    --------
-    >>> round(insert_screw_load(0.010, 80, 6000))
-    316
-
-    References
-    ----------
-    own derivation
-    """
-    turn = 2.0 * math.pi * check.positive("spindle speed [1/min]", spindle_speed_rpm) / 60.0
-    mass = check.positive("insert mass [kg]", insert_mass_kg)
-    return mass * turn**2 * check.positive("radius [mm]", radius_mm) / 1000.0
-
-
-def hoop_stress(density_kg_m3: float, rim_speed_m_min: float) -> float:
-    """Stress in a thin rotating ring: ``sigma = rho v^2``.
-
-    Parameters
-    ----------
-    density_kg_m3 : float
-        Density of the body [kg/m3].
-    rim_speed_m_min : float
-        Speed of the rim [m/min].
-
-    Returns
-    -------
-    float
-        Hoop stress [N/mm2].
-
-    Raises
-    ------
-    OutOfRangeError
-        If a value is not finite and above zero.
-
-    Notes
-    -----
-    Lower estimate for a body: pockets concentrate stress.
-
-    Examples
-    --------
-    >>> round(hoop_stress(7850, 3000), 1)
-    19.6
-
-    References
-    ----------
-    own derivation
-    """
-    rim = check.positive("rim speed [m/min]", rim_speed_m_min) / 60.0
-    return check.positive("density [kg/m3]", density_kg_m3) * rim**2 / 1e6
-
-
-def permissible_unbalance(grade_mm_s: float, spindle_speed_rpm: float) -> float:
-    """Unbalance per mass that a balance grade allows: ``e = 1000 G / omega``.
-
-    Parameters
-    ----------
-    grade_mm_s : float
-        Balance grade G [mm/s].
-    spindle_speed_rpm : float
-        Spindle speed n [1/min].
-
-    Returns
-    -------
-    float
-        Residual unbalance per mass [g.mm/kg].
-
-    Raises
-    ------
-    OutOfRangeError
-        If a value is not finite and above zero.
-
-    Notes
-    -----
-    The same number is the offset of the centre of mass in micrometres.
-
-    Examples
-    --------
-    >>> round(permissible_unbalance(2.5, 8000), 2)
-    2.98
-
-    References
-    ----------
-    iso-21940-11
-    """
-    turn = 2.0 * math.pi * check.positive("spindle speed [1/min]", spindle_speed_rpm) / 60.0
-    return 1000.0 * check.positive("balance grade [mm/s]", grade_mm_s) / turn

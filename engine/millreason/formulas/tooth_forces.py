@@ -114,7 +114,8 @@ def _edge_force(
     sine = math.sin(math.radians(check.cutting_edge_angle(kappa_deg)))
     thickest = check.positive("feed per tooth [mm]", feed_mm) * sine
     base = check.positive("kc1.1 [N/mm2]", kc11_n_mm2) * check.positive("correction factor", factor)
-    return base * check.positive("depth of cut [mm]", depth_mm) / sine * thickest ** (1.0 - slope)
+    edge = check.positive("depth of cut [mm]", depth_mm) / sine
+    return base * edge * check.power_of("feed per tooth [mm]", thickest, 1.0 - slope)
 
 
 def _group_share(teeth: int, entry: float, leave: float, pitch: float, slope: float) -> float:
