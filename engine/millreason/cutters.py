@@ -1,11 +1,8 @@
-"""Cutter bodies: the families and sizes of the knowledge, and the bodies that follow from them."""
+"""Cutter bodies as they stand in the knowledge: sizes, families, and which combinations exist."""
 
 from __future__ import annotations
 
 import math
-from collections.abc import Iterator
-from dataclasses import dataclass
-from functools import cached_property
 from typing import Literal, Self
 
 from pydantic import Field, NonNegativeFloat, PositiveFloat, model_validator
@@ -13,7 +10,7 @@ from pydantic import Field, NonNegativeFloat, PositiveFloat, model_validator
 from millreason.machines import Mounting
 from millreason.provenance import SHOP_BASIS, KnowledgeFile, Many, Record, Text
 
-Pitch = Literal["coarse", "fine", "extra_fine"]
+PitchName = Literal["coarse", "fine", "extra_fine"]
 CutterClass = Literal[
     "face_mill",
     "square_shoulder_mill",
@@ -22,15 +19,16 @@ CutterClass = Literal[
     "finishing_face_mill",
     "fly_cutter",
 ]
-Rake = Literal["double_negative", "double_positive", "positive_negative"]
-Corner = Literal[
+RakeName = Literal["double_negative", "double_positive", "positive_negative"]
+CornerName = Literal[
     "facet", "radius_0.4", "radius_0.8", "radius_1.2", "radius_1.6", "radius_2.0", "round", "sharp"
 ]
-Edge = Literal[
+EdgeName = Literal[
     "sharp_polished_uncoated", "sharp_thin_coated", "honed_coated", "negative_land", "diamond", "cbn"
 ]
-Pockets = Literal["fixed", "cartridge"]
-PITCHES: tuple[Pitch, ...] = ("coarse", "fine", "extra_fine")
+PocketsName = Literal["fixed", "cartridge"]
+ON_A_BORE = ("shell_arbor", "spindle_nose_flange")
+PITCHES: tuple[PitchName, ...] = ("coarse", "fine", "extra_fine")
 
 
 class BodySize(Record):
@@ -98,7 +96,7 @@ class RunOutClass(Record):
     """Run-out that a kind of pocket and care allows."""
 
     id: Text
-    pockets: Pockets
+    pockets: PocketsName
     axial_mm: PositiveFloat
     axial_best_mm: PositiveFloat | None = None
     radial_mm: PositiveFloat
@@ -118,7 +116,7 @@ class WiperSetting(Record):
 class CornerOption(Record):
     """An insert corner: its radius and the land parallel to the floor."""
 
-    corner: Corner
+    corner: CornerName
     radius_mm: PositiveFloat | None = None
     land_mm: NonNegativeFloat
     basis: Text
@@ -133,8 +131,8 @@ class CornerOption(Record):
 class RakeOption(Record):
     """A rake combination with its effective angles, and the edges it is made with."""
 
-    rake: Rake
-    edges: Many[Edge]
+    rake: RakeName
+    edges: Many[EdgeName]
     axial_deg: float
     radial_deg: float
     insert_edges: int = Field(gt=0)
@@ -185,7 +183,7 @@ class CutterFamily(Record):
     nominal_at: Literal["floor", "outermost"]
     from_mm: PositiveFloat
     to_mm: PositiveFloat
-    pitches: Many[Pitch]
+    pitches: Many[PitchName]
     teeth: int | None = Field(default=None, gt=0)
     insert_diameter_mm: PositiveFloat | None = None
     edge_length_mm: PositiveFloat
@@ -213,11 +211,36 @@ class CutterFamily(Record):
         return self
 
     @property
-    def overhang_of_edge_mm(self) -> float:
+    def edge_reach_mm(self) -> float:
         """How far the inserts stand out beyond the floor diameter, per side."""
         if self.insert_diameter_mm is not None:
             return self.insert_diameter_mm / 2
         return self.usable_depth_mm / math.tan(math.radians(self.kappa_deg))
+
+    def floor_diameter_mm(self, size: BodySize) -> float:
+        """Return the effective diameter at the floor."""
+        return size.nominal_mm - (0 if self.nominal_at == "floor" else 2 * self.edge_reach_mm)
+
+    def outermost_mm(self, size: BodySize) -> float:
+        """Return the diameter over the inserts, which pockets, walls and clamps meet."""
+        return size.nominal_mm + (2 * self.edge_reach_mm if self.nominal_at == "floor" else 0)
+
+    def teeth_for(self, size: BodySize, pitch: str) -> int | None:
+        """Return the teeth of a size in a pitch, or None where that body is not made."""
+        if pitch not in self.pitches or not self.from_mm <= size.nominal_mm <= self.to_mm:
+            return None
+        return self.teeth or size.teeth[PITCHES.index(pitch)]
+
+    def pockets_for(self, size: BodySize) -> tuple[PocketsName, ...]:
+        """Return the kinds of insert pocket a size is made with."""
+        fixed: tuple[PocketsName, ...] = ("fixed",) if self.fixed_pockets else ()
+        start = self.cartridge_from_mm
+        return (*fixed, "cartridge") if start is not None and size.nominal_mm >= start else fixed
+
+    def wipers_for(self, size: BodySize) -> tuple[str, ...]:
+        """Return the wiper options a size is made with."""
+        made = self.wipers is not None and size.nominal_mm >= self.wipers.from_mm
+        return ("none", "one", "all") if made else ("none",)
 
     def rake_for(self, rake: str, edge: str) -> RakeOption | None:
         """Return the option with this rake combination and edge, if it is made."""
@@ -229,29 +252,35 @@ class CutterFamily(Record):
 
 
 class CutterOnHand(Record):
-    """A cutter that a shop owns: a family, and what is measured or marked on this one."""
+    """A cutter on a shop's shelf, by the names a job uses for its cutters; what is left out is unknown."""
 
     id: Text
-    title: Text
-    family: Text
-    nominal_mm: PositiveFloat
+    cutter_class: CutterClass
+    diameter_mm: PositiveFloat
     teeth: int = Field(gt=0)
-    pitch: Pitch | None = None
-    rake: Rake | None = None
-    corners: Many[Corner] = ()
-    edges: Many[Edge] = ()
-    wipers: Many[Literal["none", "one", "all"]] = ("none",)
-    pockets: Pockets = "fixed"
+    kappa_deg: float = Field(ge=0, le=90)
+    pitch: PitchName | None = None
+    rake: RakeName | None = None
+    corner: CornerName | None = None
+    edge: EdgeName | None = None
+    wiper: Literal["none", "one", "all"] | None = None
+    pockets: PocketsName | None = None
     mounting: Mounting | None = None
-    bore_mm: PositiveFloat | None = None
+    hand: Literal["right", "left"] | None = None
+    usable_depth_mm: PositiveFloat | None = None
+    speed_limit_rpm: PositiveFloat | None = None
     mass_kg: PositiveFloat | None = None
-    speed_most_rpm: PositiveFloat | None = None
-    hand: Literal["right", "left"] = "right"
+    land_mm: NonNegativeFloat | None = None
+    note: str | None = None
     basis: Text = SHOP_BASIS
+
+    def values(self) -> dict[str, float | int | str]:
+        """Return what is known of the cutter, without its id and basis."""
+        return self.model_dump(exclude={"id", "basis"}, exclude_none=True)
 
 
 class CuttersFile(KnowledgeFile):
-    """knowledge/cutters.yaml."""
+    """knowledge/cutters.yaml: sizes, mountings, and the families of bodies."""
 
     sizes: Many[BodySize]
     mountings: Many[MountingRow]
@@ -262,133 +291,23 @@ class CuttersFile(KnowledgeFile):
     wiper_setting: WiperSetting
     families: Many[CutterFamily]
 
+    def body_material(self, name: str) -> BodyMaterial:
+        """Return a body material by its id."""
+        return next(material for material in self.body_materials if material.id == name)
+
+    def mountings_for(self, family: CutterFamily, size: BodySize) -> tuple[MountingRow, ...]:
+        """Return how a body of this family and size can be held; a body without a bore takes no arbor."""
+        return tuple(
+            row
+            for row in self.mountings
+            if row.from_mm <= size.nominal_mm <= row.to_mm
+            and (family.mountings is None or row.mounting in family.mountings)
+            and (size.bore_mm is not None or row.mounting not in ON_A_BORE)
+        )
+
 
 class ShopCuttersFile(KnowledgeFile):
     """The cutters of a shop: families of its own, and the cutters on its shelf."""
 
     families: Many[CutterFamily] = ()
     on_hand: Many[CutterOnHand] = ()
-
-
-@dataclass(frozen=True)
-class CutterBody:
-    """One body: a family in one size and one pitch. Its masses, gullets and outer diameters are computed."""
-
-    family: CutterFamily
-    size: BodySize
-    pitch: Pitch
-    teeth: int
-    mountings: tuple[MountingRow, ...]
-    material: BodyMaterial
-    gullet: GulletModel
-    on_hand: CutterOnHand | None = None
-
-    @cached_property
-    def id(self) -> str:
-        """A readable name that is unique among bodies."""
-        if self.on_hand is not None:
-            return self.on_hand.id
-        return f"{self.family.id}/{self.size.label}/{self.pitch}/{self.material.id}"
-
-    @cached_property
-    def diameter_mm(self) -> float:
-        """Effective diameter at the floor."""
-        if self.family.nominal_at == "floor":
-            return self.size.nominal_mm
-        return self.size.nominal_mm - 2 * self.family.overhang_of_edge_mm
-
-    @cached_property
-    def outermost_mm(self) -> float:
-        """Diameter over the inserts, which pockets, walls and clamps meet."""
-        return self.diameter_mm + 2 * self.family.overhang_of_edge_mm
-
-    @cached_property
-    def mass_kg(self) -> float:
-        """Mass of the body: measured if the shop gave it, else the estimate of the ring."""
-        if self.on_hand is not None and self.on_hand.mass_kg is not None:
-            return self.on_hand.mass_kg
-        return self._ring_mass(self.material.fill)
-
-    def mass_span_kg(self) -> tuple[float, float]:
-        """Return the lowest and highest estimate of the mass."""
-        return self._ring_mass(self.material.fill_low), self._ring_mass(self.material.fill_high)
-
-    def _ring_mass(self, fill: float) -> float:
-        bore = self.size.bore_mm or 0.0
-        ring = math.pi / 4 * (self.size.nominal_mm**2 - bore**2) * self.size.height_mm
-        return self.material.density_kg_mm3 * ring * fill
-
-    @cached_property
-    def gullet_area_mm2(self) -> float:
-        """Cross-section of the room in front of one tooth (estimate)."""
-        return self.gullet.area_mm2(self.size.nominal_mm, self.teeth)
-
-    @cached_property
-    def chip_room_mm3(self) -> float:
-        """Room for chips in front of one tooth over the usable depth (estimate)."""
-        return self.gullet_area_mm2 * self.family.usable_depth_mm
-
-    @property
-    def pockets(self) -> tuple[Pockets, ...]:
-        """The kinds of insert pocket this body is made with."""
-        if self.on_hand is not None:
-            return (self.on_hand.pockets,)
-        start = self.family.cartridge_from_mm
-        fixed: tuple[Pockets, ...] = ("fixed",) if self.family.fixed_pockets else ()
-        return (*fixed, "cartridge") if start is not None and self.size.nominal_mm >= start else fixed
-
-    @property
-    def wipers(self) -> tuple[str, ...]:
-        """The wiper options this body is made with."""
-        if self.on_hand is not None:
-            return self.on_hand.wipers
-        made = self.family.wipers
-        return (
-            ("none", "one", "all") if made is not None and self.size.nominal_mm >= made.from_mm else ("none",)
-        )
-
-    def mounting_row(self, mounting: str) -> MountingRow | None:
-        """Return how this body is held by a mounting, if it is made for it."""
-        return next((row for row in self.mountings if row.mounting == mounting), None)
-
-
-def bodies_of(family: CutterFamily, file: CuttersFile) -> Iterator[CutterBody]:
-    """Yield every body of a family: each size, pitch and body material that is made."""
-    materials = {material.id: material for material in file.body_materials}
-    for size in file.sizes:
-        if not family.from_mm <= size.nominal_mm <= family.to_mm:
-            continue
-        rows = mountings_for(family, size, file)
-        for pitch in family.pitches:
-            teeth = family.teeth or size.teeth[PITCHES.index(pitch)]
-            if teeth is not None:
-                for name in family.body_materials:
-                    yield CutterBody(family, size, pitch, teeth, rows, materials[name], file.gullet)
-
-
-def mountings_for(family: CutterFamily, size: BodySize, file: CuttersFile) -> tuple[MountingRow, ...]:
-    """Return how a body of this family and size can be held."""
-    return tuple(
-        row
-        for row in file.mountings
-        if row.from_mm <= size.nominal_mm <= row.to_mm
-        and (family.mountings is None or row.mounting in family.mountings)
-        and (row.mounting not in ("shell_arbor", "spindle_nose_flange") or size.bore_mm is not None)
-    )
-
-
-def body_on_hand(cutter: CutterOnHand, family: CutterFamily, file: CuttersFile) -> CutterBody:
-    """Return the body of a cutter that a shop owns; what the shop left out is taken from the nearest size."""
-    nearest = min(file.sizes, key=lambda size: (abs(size.nominal_mm - cutter.nominal_mm), size.nominal_mm))
-    bore = cutter.bore_mm if cutter.bore_mm is not None else nearest.bore_mm
-    size = nearest.model_copy(update={"nominal_mm": cutter.nominal_mm, "bore_mm": bore, "label": cutter.id})
-    rows = tuple(row for row in mountings_for(family, size, file) if cutter.mounting in (None, row.mounting))
-    material = next(item for item in file.body_materials if item.id == family.body_materials[0])
-    pitch = cutter.pitch or _nearest_pitch(cutter.teeth, nearest)
-    return CutterBody(family, size, pitch, cutter.teeth, rows, material, file.gullet, cutter)
-
-
-def _nearest_pitch(teeth: int, size: BodySize) -> Pitch:
-    """Return the pitch class whose count is nearest; the coarser one if two are as near."""
-    known = [(abs(count - teeth), index) for index, count in enumerate(size.teeth) if count is not None]
-    return PITCHES[min(known)[1]]

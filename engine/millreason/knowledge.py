@@ -11,7 +11,7 @@ from functools import cached_property
 from pathlib import Path
 from typing import Protocol, TypeVar
 
-from millreason.cutters import CutterBody, CuttersFile, ShopCuttersFile, bodies_of, body_on_hand
+from millreason.cutters import CutterFamily, CutterOnHand, CuttersFile, ShopCuttersFile
 from millreason.errors import DataError, Finding, MillreasonError, did_you_mean
 from millreason.machines import Interface, InterfacesFile, Machine, MachinesFile
 from millreason.practice import Fluid, PracticeFile, PracticeValue, RuleOut, Strength, StrengthsFile
@@ -73,8 +73,7 @@ class Knowledge:
     practice: Mapping[str, PracticeValue]
     fluids: Mapping[str, Fluid]
     cutters: CuttersFile
-    bodies: tuple[CutterBody, ...]
-    on_hand: tuple[CutterBody, ...]
+    on_hand: Mapping[str, CutterOnHand]
     from_shop: frozenset[str]
     files: Mapping[str, LoadedFile]
     root: Path = field(repr=False)
@@ -100,21 +99,20 @@ class Knowledge:
         MillreasonError
             if no interface has this name; the message lists near names.
         """
-        found = self.interface_names.get(_plain(written))
+        plain = {_plain(name): identity for name, identity in self.interface_names.items()}
+        found = plain.get(_plain(written))
         if found is None:
-            message = (
-                f"unknown spindle interface {written!r}.{did_you_mean(_plain(written), self.interface_names)}"
-            )
-            raise MillreasonError(f"{message} Known: {', '.join(self.interfaces)}.")
+            hint = did_you_mean(written.casefold(), self.interface_names)
+            known = ", ".join(self.interfaces)
+            raise MillreasonError(f"unknown spindle interface {written!r}.{hint} Known: {known}.")
         return self.interfaces[found]
 
     @cached_property
     def interface_names(self) -> Mapping[str, str]:
-        """Every name of an interface, in plain form, with its id."""
+        """Every spelling of an interface in lower case, with its id."""
+        entries = self.interfaces.values()
         return {
-            _plain(name): entry.id
-            for entry in self.interfaces.values()
-            for name in (entry.id, *entry.aliases)
+            name.casefold(): entry.id for entry in entries for name in (entry.id, entry.title, *entry.aliases)
         }
 
     def provenance_counts(self) -> dict[BasisKind, int]:
@@ -246,17 +244,18 @@ def load_knowledge(root: Path | None = None, shop: Path | None = None) -> Knowle
         practice=practice.values,
         fluids=loader.by_id("knowledge/practice.yaml", "fluids", practice.fluids),
         cutters=cutter_set,
-        bodies=tuple(body for family in cutter_set.families for body in bodies_of(family, cutter_set)),
-        on_hand=_on_hand(loader, own_cutters, cutter_set),
-        from_shop=frozenset(
-            entry.id for entry in (*own_machines.machines, *own_cutters.families, *own_cutters.on_hand)
-        ),
+        on_hand=loader.by_id(shop_name("cutters"), "on_hand", own_cutters.on_hand),
+        from_shop=_ids(own_machines.machines, own_cutters.families, own_cutters.on_hand),
         files=loader.files,
         root=base,
         shop=shop,
     )
     loader.stop_if_wrong()
     return result
+
+
+def _ids(*groups: Iterable[_HasId]) -> frozenset[str]:
+    return frozenset(entry.id for group in groups for entry in group)
 
 
 def _machines(
@@ -278,7 +277,7 @@ def _machines(
 
 def _cutters(loader: _Loader, shipped: CuttersFile, own: ShopCuttersFile) -> CuttersFile:
     """Lay a shop's families over the shipped ones, and check that every body material exists."""
-    families = {}
+    families: dict[str, CutterFamily] = {}
     materials = [material.id for material in shipped.body_materials]
     for name, entries in (("knowledge/cutters.yaml", shipped.families), (shop_name("cutters"), own.families)):
         families |= loader.by_id(name, "families", entries)
@@ -289,18 +288,3 @@ def _cutters(loader: _Loader, shipped: CuttersFile, own: ShopCuttersFile) -> Cut
                     loader.add(name, ("families", index, "body_materials", place), message)
     loader.stop_if_wrong()
     return shipped.model_copy(update={"families": tuple(families.values())})
-
-
-def _on_hand(loader: _Loader, own: ShopCuttersFile, cutters: CuttersFile) -> tuple[CutterBody, ...]:
-    """Return the bodies of the cutters on a shop's shelf."""
-    families = {family.id: family for family in cutters.families}
-    bodies = []
-    for index, cutter in enumerate(own.on_hand):
-        family = families.get(cutter.family)
-        if family is None:
-            message = f"unknown family {cutter.family!r}.{did_you_mean(cutter.family, families)}"
-            known = f" Families: {', '.join(families)}."
-            loader.add(shop_name("cutters"), ("on_hand", index, "family"), message + known)
-        else:
-            bodies.append(body_on_hand(cutter, family, cutters))
-    return tuple(bodies)
