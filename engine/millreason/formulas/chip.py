@@ -114,7 +114,7 @@ def mean_chip_thickness(
     diameter = check.positive("cutter diameter [mm]", diameter_mm)
     ratio = check.above_up_to("width of cut [mm]", width_mm, 0.0, diameter) / diameter
     centred = 2.0 * math.degrees(math.asin(ratio))
-    flush = math.degrees(math.acos(max(1.0 - 2.0 * ratio, -1.0)))
+    flush = 2.0 * math.degrees(math.asin(math.sqrt(ratio)))
     # An arc copied from a printed page carries its rounding with it.
     printed = 1e-3
     arc = check.between("arc of engagement [deg]", arc_deg, centred * (1 - printed), flush * (1 + printed))

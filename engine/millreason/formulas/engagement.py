@@ -160,8 +160,8 @@ def flush_arc(width_mm: float, diameter_mm: float, side: str = "exit") -> Engage
     --------
     >>> round(flush_arc(2, 3).arc_deg, 1)
     109.5
-    >>> flush_arc(50, 100, "entry")
-    Engagement(entry_deg=0.0, exit_deg=90.0, arc_deg=90.0)
+    >>> flush_arc(50, 100, "entry").entry_deg, flush_arc(50, 100, "exit").exit_deg
+    (0.0, 180.0)
 
     References
     ----------
@@ -331,7 +331,10 @@ def in_exit_danger_band(exit_deg: float, half_band_deg: float) -> bool:
 
 
 def _angle_at(share_of_diameter: float) -> float:
-    return math.degrees(math.acos(min(max(1.0 - 2.0 * share_of_diameter, -1.0), 1.0)))
+    # The half-angle form keeps its digits at both flanks, where the cosine is flat.
+    if share_of_diameter <= 0.5:
+        return 2.0 * math.degrees(math.asin(math.sqrt(share_of_diameter)))
+    return 180.0 - 2.0 * math.degrees(math.asin(math.sqrt(max(1.0 - share_of_diameter, 0.0))))
 
 
 def _no_gap(entry_gap_mm: float) -> float:

@@ -14,12 +14,12 @@ class TiltWindow:
     """Least tilt that keeps the back of the cutter clear and largest that the flatness allows."""
 
     least_mm_m: float
-    largest_mm_m: float
+    largest_mm_m: float | None
 
     @property
     def is_open(self) -> bool:
         """Whether any tilt satisfies both."""
-        return self.least_mm_m <= self.largest_mm_m
+        return self.largest_mm_m is None or self.least_mm_m <= self.largest_mm_m
 
 
 def tilt_dish(
@@ -130,12 +130,13 @@ def tilt_window(
     Returns
     -------
     TiltWindow
-        Least and largest tilt [mm/m]; closed when the least exceeds the largest.
+        Least and largest tilt [mm/m], the largest None where no tilt dishes that deep; closed when the
+        least exceeds the largest.
 
     Raises
     ------
     OutOfRangeError
-        If a value is not finite and above zero, does not fit the diameter, or no tilt reaches it.
+        If a value is not finite and above zero, or does not fit the diameter.
 
     Notes
     -----
@@ -144,7 +145,7 @@ def tilt_window(
     Examples
     --------
     >>> window = tilt_window(125, 100, 0.0025, 0.005)
-    >>> round(window.least_mm_m, 3), round(window.largest_mm_m, 3), window.is_open
+    >>> round(window.least_mm_m, 3), round(window.largest_mm_m or 0, 3), window.is_open
     (0.04, 0.1, True)
 
     References
@@ -155,7 +156,7 @@ def tilt_window(
     depth = _arc_depth(diameter, width_mm, entry_gap_mm)
     lift = check.inside("lift needed [mm]", check.positive("lift needed [mm]", lift_needed_mm), 0.0, diameter)
     dish = check.positive("dish allowed [mm]", dish_allowed_mm)
-    largest = math.inf if dish >= depth else 1000.0 * math.tan(math.asin(dish / depth))
+    largest = None if dish >= depth else 1000.0 * math.tan(math.asin(dish / depth))
     return TiltWindow(1000.0 * math.tan(math.asin(lift / diameter)), largest)
 
 

@@ -192,8 +192,8 @@ def plane_forces(tangential_n: float, radial_n: float, angle_deg: float) -> Plan
 
     Examples
     --------
-    >>> plane_forces(1000, 0, 180)
-    PlaneForces(feed_n=-1000.0, cross_n=0.0)
+    >>> plane_forces(1000, 0, 180).feed_n
+    -1000.0
 
     References
     ----------
@@ -203,8 +203,7 @@ def plane_forces(tangential_n: float, radial_n: float, angle_deg: float) -> Plan
     radial = check.not_negative("radial force [N]", radial_n)
     angle = math.radians(check.between("tooth angle [deg]", angle_deg, 0.0, 180.0))
     sine, cosine = math.sin(angle), math.cos(angle)
-    cross = radial * cosine - tangential * sine
-    return PlaneForces(tangential * cosine + radial * sine, round(cross, 9) + 0.0)
+    return PlaneForces(tangential * cosine + radial * sine, radial * cosine - tangential * sine)
 
 
 def mean_plane_forces(
