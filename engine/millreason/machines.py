@@ -149,7 +149,7 @@ MachineClass = Literal[
     "other",
 ]
 CurvePoint = Many[PositiveFloat]
-NOT_FACTS = frozenset({"id", "title", "basis", "basis_of", "note", "curve", "rapid_m_min", "tool_change_min"})
+NOT_FACTS = frozenset({"id", "title", "basis", "basis_of", "note", "rapid_m_min", "tool_change_min"})
 
 
 class Machine(Record):
@@ -210,11 +210,7 @@ class Machine(Record):
     def facts(self) -> dict[str, Any]:
         """Return what is known of the machine as facts named `machine.<field>`."""
         known = self.model_dump(by_alias=True, exclude=set(NOT_FACTS), exclude_none=True)
-        facts = {
-            f"machine.{name}": list(value) if isinstance(value, tuple) else value
-            for name, value in known.items()
-        }
-        return {name: value for name, value in facts.items() if value != []}
+        return {f"machine.{name}": value for name, value in known.items() if value != ()}
 
     def basis_label(self, name: str) -> str:
         """Return the label of the basis of one field."""

@@ -159,11 +159,35 @@ def _unknown_source(document: Document, name: str, basis: Basis, sources: Mappin
 
 
 def count_kinds(document: Document, bases: Bases) -> Counter[BasisKind]:
-    """Count the values of a file by the kind of their basis."""
+    """Count the values of a file by the kind of their basis; an entry without numbers counts as one."""
     kinds: Counter[BasisKind] = Counter()
-    for _, label in labels(document.data):
-        kinds["shop" if label not in bases else bases[label].kind] += 1
+    for label, values in _weights(document.data):
+        kinds[bases[label].kind if label in bases else "shop"] += values
     return kinds
+
+
+def _weights(data: Any) -> Iterator[tuple[str, int]]:
+    """Yield every label that is used below a value, with how many values stand on it."""
+    if isinstance(data, dict):
+        own = data.get("basis_of", {})
+        yield from ((label, 1) for label in own.values())
+        if isinstance(data.get("basis"), str):
+            numbers = sum(_numbers(value) for name, value in data.items() if name not in own)
+            apart = sum(1 for name in own if name not in data)
+            yield data["basis"], max(numbers - apart, 1)
+        data = list(data.values())
+    if isinstance(data, list):
+        for value in data:
+            yield from _weights(value)
+
+
+def _numbers(value: Any) -> int:
+    """Return how many values stand directly on an entry's basis: a list counts once, groups with a basis not at all."""
+    if isinstance(value, dict):
+        return 0 if "basis" in value else sum(_numbers(inner) for inner in value.values())
+    if isinstance(value, list):
+        return int(any(_numbers(inner) for inner in value))
+    return int(isinstance(value, int | float))
 
 
 def cited_sources(bases: Bases) -> frozenset[str]:
