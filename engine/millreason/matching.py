@@ -179,8 +179,8 @@ REMEDIES = {
     "tests": "Conclude a named judgement in a rule of its own, and test that.",
     "different tests on it": "Conclude a few named classes from it first, and test those.",
     "uses": "Conclude a named judgement from it first, and test that.",
-    "facts": "Split the work into several runs.",
-    "firings": "Look for rules that feed themselves.",
+    "facts": "Look for rules that feed themselves, or split the work into several runs.",
+    "firings": "Look for rules that feed themselves, or that pair many facts.",
 }
 
 
