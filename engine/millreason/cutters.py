@@ -103,6 +103,15 @@ class RunOutClass(Record):
     basis: Text
 
 
+class RunOutCeiling(Record):
+    """The most run-out of main edges that a standard allows: between neighbours, and between opposite teeth."""
+
+    to_mm: PositiveFloat
+    adjacent_mm: PositiveFloat
+    opposite_mm: PositiveFloat
+    basis: Text
+
+
 class WiperSetting(Record):
     """How far a wiper stands below its neighbours."""
 
@@ -288,6 +297,7 @@ class CuttersFile(KnowledgeFile):
     body_materials: Many[BodyMaterial]
     gullet: GulletModel
     run_out: Many[RunOutClass]
+    run_out_ceilings: Many[RunOutCeiling]
     wiper_setting: WiperSetting
     families: Many[CutterFamily]
 

@@ -119,7 +119,7 @@ class Knowledge:
         """Count the values by what they rest on; the shop's own are counted apart."""
         total: Counter[BasisKind] = Counter()
         for file in self.files.values():
-            total.update(count_kinds(file.document, file.bases))
+            total.update(count_kinds(file.document, file.bases, file.shop))
         return dict(sorted(total.items()))
 
     def unused_sources(self, also: Iterable[str] = ()) -> tuple[str, ...]:

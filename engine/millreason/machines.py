@@ -32,6 +32,7 @@ class SpindleNose(Record):
     key_mm: PositiveFloat
     pilot_mm: PositiveFloat | None = None
     basis: Text
+    basis_of: dict[str, str] = Field(default_factory=dict)
 
 
 class Carries(Record):

@@ -158,19 +158,24 @@ def _unknown_source(document: Document, name: str, basis: Basis, sources: Mappin
     return document.finding(("bases", name, "cited", "source"), message)
 
 
-def count_kinds(document: Document, bases: Bases) -> Counter[BasisKind]:
-    """Count the values of a file by the kind of their basis; an entry without numbers counts as one."""
+def count_kinds(document: Document, bases: Bases, shop: bool = False) -> Counter[BasisKind]:
+    """Count the values of a file by the kind of their basis.
+
+    An entry without numbers counts as one; an entry of a shop that names no basis is the shop's own.
+    """
     kinds: Counter[BasisKind] = Counter()
-    for label, values in _weights(document.data):
+    for label, values in _weights(document.data, shop):
         kinds[bases[label].kind if label in bases else "shop"] += values
     return kinds
 
 
-def _weights(data: Any) -> Iterator[tuple[str, int]]:
+def _weights(data: Any, shop: bool) -> Iterator[tuple[str, int]]:
     """Yield every label that is used below a value, with how many values stand on it."""
     if isinstance(data, dict):
         own = data.get("basis_of", {})
         yield from ((label, 1) for label in own.values())
+        if shop and "id" in data and not own:
+            data = {"basis": SHOP_BASIS, **data}
         if isinstance(data.get("basis"), str):
             numbers = sum(_numbers(value) for name, value in data.items() if name not in own)
             apart = sum(1 for name in own if name not in data)
@@ -178,11 +183,11 @@ def _weights(data: Any) -> Iterator[tuple[str, int]]:
         data = list(data.values())
     if isinstance(data, list):
         for value in data:
-            yield from _weights(value)
+            yield from _weights(value, shop)
 
 
 def _numbers(value: Any) -> int:
-    """Return how many values stand directly on an entry's basis: a list counts once, groups with a basis not at all."""
+    """Return how many values stand on an entry's own basis; a list counts once, a group with its own not."""
     if isinstance(value, dict):
         return 0 if "basis" in value else sum(_numbers(inner) for inner in value.values())
     if isinstance(value, list):
