@@ -3,39 +3,37 @@
 from __future__ import annotations
 
 import heapq
-from collections.abc import Callable, Iterable, Iterator, Mapping
+import math
+from collections.abc import Iterable, Iterator, Mapping
 from dataclasses import dataclass
 from itertools import product
 from typing import TYPE_CHECKING
 
-from millreason.formulas.body import outermost_diameter
 from millreason.trace import Evidence, Ledger, OptionLedger
 
 if TYPE_CHECKING:
     from millreason.job import OwnCutter
-    from millreason.knowledge import Corner, Cutters, Family, Rake, Size
-
-PITCHES = ("coarse", "fine", "extra_fine")
-ROUND_KAPPA_DEG = 0.0
+    from millreason.cutters import BodySize, CornerOption, CutterFamily, CuttersFile, RakeOption
 
 
 @dataclass(frozen=True)
 class Candidate:
     """One complete tool, before its plan."""
 
-    family: Family
-    size: Size
+    family: CutterFamily
+    size: BodySize
     pitch: str
     teeth: int
-    rake: Rake
+    rake: RakeOption
     edge: str
-    corner: Corner
+    corner: CornerOption
     wiper: str
     wiper_land_mm: float
     pockets: str
     mounting: str
     evidence: float
     own: OwnCutter | None = None
+    blocked: tuple[Evidence, ...] = ()
 
     @property
     def is_round(self) -> bool:
@@ -45,19 +43,23 @@ class Candidate:
     @property
     def diameter_mm(self) -> float:
         """Diameter at the edge that makes the floor."""
-        nominal = self.size.nominal_mm
-        if self.family.nominal_at == "floor":
-            return nominal
-        return nominal - (self.family.insert_diameter_mm or 0.0)
+        return self.family.floor_diameter_mm(self.size)
+
+    @property
+    def land_mm(self) -> float:
+        """Length of the land that makes the floor: the wiper's where there is one, else the insert's own."""
+        return self.wiper_land_mm if self.wiper != "none" else self.corner.land_mm
+
+    @property
+    def speed_limit_rpm(self) -> float:
+        """Speed marked on the body; a generic body has none."""
+        marked = self.own.values.get("speed_limit_rpm") if self.own else None
+        return float(marked) if isinstance(marked, int | float) else math.inf
 
     @property
     def outermost_mm(self) -> float:
         """Diameter over the inserts, which the changer, walls and clamps meet."""
-        if self.family.nominal_at == "outermost":
-            return self.size.nominal_mm
-        if self.is_round:
-            return self.size.nominal_mm + (self.family.insert_diameter_mm or 0.0)
-        return outermost_diameter(self.size.nominal_mm, self.family.usable_depth_mm, self.family.kappa_deg)
+        return self.family.outermost_mm(self.size)
 
     @property
     def label(self) -> str:
@@ -121,9 +123,9 @@ class _Parts:
     """Everything of a tool but its body and size."""
 
     pitch: str
-    rake: Rake
+    rake: RakeOption
     edge: str
-    corner: Corner
+    corner: CornerOption
     wiper: str
     score: float
 
@@ -131,12 +133,12 @@ class _Parts:
 class Catalogue:
     """All tools that exist for a job, tried best first."""
 
-    def __init__(self, cutters: Cutters, ledgers: Ledgers, series: str, mountings: Iterable[str], plan_mounting: Callable[[Size], str | None] | None = None) -> None:
+    def __init__(self, cutters: CuttersFile, ledgers: Ledgers, series: str, mountings: Iterable[str]) -> None:
         self._cutters = cutters
         self._ledgers = ledgers
         self._sizes = [size for size in cutters.sizes if size.series == series]
         self._interface_mountings = frozenset(mountings)
-        self._mounting_of: dict[str, str | None] = {}
+        self._mounting_of: dict[tuple[str, str], str | None] = {}
 
     def best_first(self) -> Iterator[Candidate]:
         """Yield every candidate whose parts are not ruled out, best evidence first."""
@@ -159,7 +161,7 @@ class Catalogue:
         """Return how many candidates there are."""
         return sum(1 for _ in self.best_first())
 
-    def _lane(self, place: int, family: Family) -> _Lane | None:
+    def _lane(self, place: int, family: CutterFamily) -> _Lane | None:
         body = self._score("cutter_class", family.cutter_class), self._score("kappa_deg", kappa_key(family.kappa_deg))
         if None in body:
             return None
@@ -168,7 +170,7 @@ class Catalogue:
             for size in self._sizes
             if family.from_mm <= size.nominal_mm <= family.to_mm
             and (score := self._score("diameter_mm", size_key(size.nominal_mm))) is not None
-            and self._mounting(size) is not None
+            and self._mounting(family, size) is not None
         ]
         sizes.sort(key=lambda entry: (-entry[0], entry[1].nominal_mm))
         parts = sorted(self._parts(family), key=lambda entry: -entry.score)
@@ -179,49 +181,34 @@ class Catalogue:
     def _score(self, pick: str, option: str) -> float | None:
         return None if self._ledgers.ruled_out(pick, option) else self._ledgers.balance(pick, option)
 
-    def _parts(self, family: Family) -> Iterator[_Parts]:
-        wipers = ["none", "one", "all"] if family.wipers else ["none"]
+    def _parts(self, family: CutterFamily) -> Iterator[_Parts]:
+        wipers = ("none", "one", "all") if family.wipers else ("none",)
         rakes = [(rake, edge) for rake in family.rakes for edge in rake.edges]
         for pitch, (rake, edge), corner, wiper in product(family.pitches, rakes, family.corners, wipers):
-            scores = [
-                self._score("pitch", pitch),
-                self._score("rake", rake.rake),
-                self._score("edge", edge),
-                self._score("corner", corner.corner),
-                self._score("wiper", wiper),
-            ]
+            named = {"pitch": pitch, "rake": rake.rake, "edge": edge, "corner": corner.corner, "wiper": wiper}
+            scores = [self._score(pick, option) for pick, option in named.items()]
             if None not in scores:
                 yield _Parts(pitch, rake, edge, corner, wiper, sum(score or 0.0 for score in scores))
 
-    def _mounting(self, size: Size) -> str | None:
-        if size.label not in self._mounting_of:
-            fits = {row.mounting: None for row in self._cutters.mountings if row.from_mm <= size.nominal_mm <= row.to_mm}
-            offered = [mounting for mounting in fits if mounting in self._interface_mountings]
-            self._mounting_of[size.label] = self._ledgers.best("mounting", offered)
-        return self._mounting_of[size.label]
+    def _mounting(self, family: CutterFamily, size: BodySize) -> str | None:
+        key = family.id, size.label
+        if key not in self._mounting_of:
+            made = dict.fromkeys(row.mounting for row in self._cutters.mountings_for(family, size))
+            self._mounting_of[key] = self._ledgers.best("mounting", [name for name in made if name in self._interface_mountings])
+        return self._mounting_of[key]
 
     def _candidate(self, lane: _Lane, row: int, column: int) -> Candidate | None:
-        size, parts = lane.sizes[row][1], lane.parts[column]
-        teeth = size.teeth[PITCHES.index(parts.pitch)]
-        land = wiper_land(lane.family, size.nominal_mm) if parts.wiper != "none" else 0.0
-        mounting = self._mounting(size)
-        if teeth is None or mounting is None or land is None:
+        family, size, parts = lane.family, lane.sizes[row][1], lane.parts[column]
+        teeth = family.teeth_for(size, parts.pitch)
+        mounting = self._mounting(family, size)
+        pockets = self._ledgers.best("pockets", family.pockets_for(size))
+        if teeth is None or mounting is None or pockets is None or parts.wiper not in family.wipers_for(size):
             return None
-        cartridge_from = lane.family.cartridge_from_mm
-        pockets = ["fixed", "cartridge"] if cartridge_from is not None and size.nominal_mm >= cartridge_from else ["fixed"]
-        best_pockets = self._ledgers.best("pockets", pockets)
-        if best_pockets is None:
-            return None
+        land = max(family.wipers.lands_mm) if family.wipers and parts.wiper != "none" else 0.0
+        score = lane.score(row, column)
         return Candidate(
-            lane.family, size, parts.pitch, int(teeth), parts.rake, parts.edge, parts.corner, parts.wiper, land, best_pockets, mounting, lane.score(row, column)
+            family, size, parts.pitch, teeth, parts.rake, parts.edge, parts.corner, parts.wiper, land, pockets, mounting, score
         )  # fmt: skip
-
-
-def wiper_land(family: Family, nominal_mm: float) -> float | None:
-    """Return the longest wiper land of a body, or None where it takes no wiper."""
-    if family.wipers is None or nominal_mm < family.wipers.from_mm:
-        return None
-    return max(family.wipers.lands_mm)
 
 
 @dataclass(frozen=True)
@@ -229,9 +216,9 @@ class _Lane:
     """All sizes and parts of one family, each sorted best first."""
 
     place: int
-    family: Family
+    family: CutterFamily
     body_score: float
-    sizes: list[tuple[float, Size]]
+    sizes: list[tuple[float, BodySize]]
     parts: list[_Parts]
 
     def score(self, row: int, column: int) -> float:

@@ -130,6 +130,12 @@ class Rule(_Strict):
     answers: list[int | str] = Field(default_factory=list)
 
     @property
+    def implied_missing(self) -> tuple[str, ...]:
+        """Facts that an assumption or a question silently needs to be unknown."""
+        targets = [*(self.then.assume or {}), *([self.then.ask] if self.then.ask else [])]
+        return tuple(fact for fact in targets if fact not in self.when)
+
+    @property
     def about_size(self) -> bool:
         """Whether the rule weighs one diameter of the series."""
         return any(fact.startswith("size.") for fact in self.when)
@@ -308,7 +314,10 @@ def tested_values(condition: Condition) -> list[Scalar]:
 
 def compile_rules(rules: Iterable[Rule]) -> list[InferenceRule]:
     """Turn rules into the form the inference engine runs."""
-    return [InferenceRule(rule.id, tuple(_test(fact, condition) for fact, condition in rule.when.items())) for rule in rules]
+    return [
+        InferenceRule(rule.id, (*(_test(*entry) for entry in rule.when.items()), *(Test(fact, "eq", "", "missing") for fact in rule.implied_missing)))
+        for rule in rules
+    ]
 
 
 _OPERATORS: dict[str, Any] = {"equals": "eq", "at_least": "ge", "at_most": "le", "above": "gt", "below": "lt"}

@@ -1,0 +1,241 @@
+"""Writing the answer: from what a choice found to the frozen records that people and programs read."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import replace
+from typing import TYPE_CHECKING
+
+from millreason import __version__
+from millreason.checks import make_checks, robustness
+from millreason.openings import find_openings
+from millreason.plan_record import make_plan_record
+from millreason.trace import (
+    Answer,
+    CandidateRecord,
+    CautionRecord,
+    FactRecord,
+    LimitRecord,
+    Picks,
+    Question,
+    Refusal,
+    Trace,
+    Verdict,
+)
+
+if TYPE_CHECKING:
+    from millreason.choice import Adviser, Outcome, Tried
+
+MOST_QUESTIONS = 6
+MOST_CANDIDATES_SHOWN = 12
+_SEVERITIES = ("note", "caution", "warning")
+
+
+def write_answer(adviser: Adviser, out: Outcome, openings: bool = True) -> Answer:
+    """Write the answer to a decided job; openings of a refusal are searched unless told otherwise."""
+    verdict = verdict_of(out)
+    chosen = out.stands[0] if out.stands and verdict not in ("ask", "refuse") else None
+    cautions = _cautions(out)
+    plan = make_plan_record(adviser, out, chosen) if chosen else None
+    checks = make_checks(adviser, out, chosen) if chosen else []
+    held = verdict == "conditional"
+    refusal = _refusal(adviser, out, openings) if verdict == "refuse" else None
+    return Answer(
+        job=out.job.title,
+        file=out.job.file,
+        units=out.job.units,
+        verdict=verdict,
+        summary=_summary(out, verdict, chosen),
+        picks=_picks(out, chosen) if chosen else None,
+        plan=None if held else plan,
+        checks=[] if held else checks,
+        cautions=cautions,
+        assumptions=[record for record in out.situation.records() if record.origin == "assumed"],
+        questions=_questions(adviser, out),
+        conditions=list(out.conditions.values()),
+        contradictions=list(out.contradictions),
+        refusal=refusal,
+        runners_up=[] if held or not chosen else [_candidate(tried, "stands") for tried in _others(out)],
+        robustness=robustness(adviser, out, chosen) if chosen and not held else "",
+        trace=_trace(adviser, out, chosen, held),
+        engine=adviser.stages["weigh"].engine_name,
+        version=__version__,
+        knowledge_hash=adviser.knowledge.content_hash,
+        provenance={kind: count for kind, count in sorted(adviser.knowledge.provenance_counts().items())},
+    )
+
+
+def verdict_of(out: Outcome) -> Verdict:
+    """Return the verdict: ask before refuse, refuse before conditional, warnings last."""
+    if out.must_ask:
+        return "ask"
+    if not out.stands:
+        return "refuse"
+    if out.conditions:
+        return "conditional"
+    grave = any(then.caution and then.caution.severity == "warning" for _, then in out.cautions)
+    return "recommend_with_warnings" if grave else "recommend"
+
+
+def _summary(out: Outcome, verdict: Verdict, chosen: Tried | None) -> str:
+    if verdict == "ask":
+        return "Some facts are missing without which no cutter and no time can be defended."
+    if verdict == "refuse":
+        return "No cutter does this job within the limits; see which limits bind and what would open a way."
+    assert chosen is not None
+    words = chosen.candidate.label[0].lower() + chosen.candidate.label[1:] if chosen.candidate.label[0] != "D" else chosen.candidate.label
+    if verdict == "conditional":
+        return f"{words}: held back until the conditions are confirmed; no cutting data before that."
+    layout = chosen.plan.layout
+    passes = "one pass" if layout.passes == 1 else f"{layout.passes} passes side by side"
+    layers = "one layer" if chosen.plan.layers == 1 else f"{chosen.plan.layers} layers in depth"
+    return f"{words}; {passes}, {layers}."
+
+
+def _picks(out: Outcome, chosen: Tried) -> Picks:
+    candidate, separate = chosen.candidate, out.separate
+    kappa = candidate.family.kappa_deg
+    top = chosen.plan.heaviest.kappa_top_deg
+    note = f"round insert: {top:.0f} degrees at the top of the cut" if candidate.is_round else ""
+    return Picks(
+        cutter_class=candidate.family.cutter_class,
+        diameter_mm=candidate.diameter_mm,
+        largest_diameter_mm=candidate.outermost_mm,
+        teeth=candidate.teeth,
+        pitch=candidate.pitch,
+        spacing=separate["spacing"],
+        rake=candidate.rake.rake,
+        axial_rake_deg=candidate.rake.axial_deg,
+        radial_rake_deg=candidate.rake.radial_deg,
+        lead_deg=None if candidate.is_round else 90 - kappa,
+        kappa_deg=top if candidate.is_round else kappa,
+        kappa_note=note,
+        corner=candidate.corner.corner,
+        edge=candidate.edge,
+        wiper=candidate.wiper,
+        pockets=candidate.pockets,
+        mounting=candidate.mounting,
+        hand=separate["hand"],
+        application=f"{out.situation.value('material.iso_group')} {separate['application'].replace('_', ' ')}",
+        own_cutter=candidate.own.id if candidate.own else None,
+    )
+
+
+def _cautions(out: Outcome) -> list[CautionRecord]:
+    """Return one record for every caution key, the gravest words first, with all rules that gave it."""
+    merged: dict[str, CautionRecord] = {}
+    for firing, then in out.cautions:
+        spec = then.caution
+        if spec is None:
+            continue
+        before = merged.get(spec.key)
+        record = CautionRecord(spec.key, spec.severity, firing.why, spec.do, [firing.rule], firing.basis)
+        if before is None:
+            merged[spec.key] = record
+        elif _SEVERITIES.index(spec.severity) > _SEVERITIES.index(before.severity):
+            merged[spec.key] = replace(record, rules=[*before.rules, firing.rule])
+        else:
+            merged[spec.key] = replace(before, rules=[*before.rules, firing.rule])
+    return sorted(merged.values(), key=lambda caution: -_SEVERITIES.index(caution.severity))
+
+
+def _questions(adviser: Adviser, out: Outcome) -> list[Question]:
+    """Return the questions to put, those that must be answered first, at most six."""
+    order = adviser.vocabulary.order
+    ranked = sorted(out.questions.values(), key=lambda question: (question.need != "must", order.get(question.fact, 0)))
+    if any(question.need == "must" for question in ranked):
+        ranked = [question for question in ranked if question.need == "must"] + [q for q in ranked if q.need == "useful"]
+    return ranked[:MOST_QUESTIONS]
+
+
+def _others(out: Outcome) -> list[Tried]:
+    """Return the best candidates of other bodies or sizes than the chosen one."""
+    seen = {(out.stands[0].candidate.family.id, out.stands[0].candidate.size.label)}
+    others = []
+    for tried in out.stands[1:]:
+        kind = (tried.candidate.family.id, tried.candidate.size.label)
+        if kind not in seen:
+            seen.add(kind)
+            others.append(tried)
+    return others[:3]
+
+
+def _candidate(tried: Tried, outcome: str) -> CandidateRecord:
+    keys = ("passes_across", "layers", "power_use_worn", "time_min", "outermost_diameter_mm", "teeth_in_cut")
+    numbers = {name: float(tried.facts[f"plan.{name}"]) for name in keys if f"plan.{name}" in tried.facts}
+    picks = {name.removeprefix("pick."): value for name, value in tried.facts.items() if name.startswith("pick.")}
+    return CandidateRecord(
+        tried.candidate.label, picks, tried.candidate.evidence, tried.lowered, tried.standing, outcome,  # type: ignore[arg-type]
+        list(tried.reasons), list(tried.limits), numbers,
+    )  # fmt: skip
+
+
+def _refusal(adviser: Adviser, out: Outcome, openings: bool) -> Refusal:
+    limits = binding_limits(out)
+    found = find_openings(adviser, out, limits) if openings else []
+    offers = [then.offer for _, then in out.cautions if then.offer]
+    return Refusal(limits, found, list(dict.fromkeys(offers)))
+
+
+def binding_limits(out: Outcome) -> list[LimitRecord]:
+    """Return the limits that bind: those of the rules that refuse, else of the candidates that came nearest."""
+    if out.limits:
+        return out.limits
+    merged: dict[tuple[str, str], LimitRecord] = {}
+    for tried in out.rejected:
+        for limit in tried.limits:
+            key = limit.key, limit.rule
+            before = merged.get(key)
+            if before is None:
+                merged[key] = limit
+            else:
+                nearer = limit if _overshoot(limit) < _overshoot(before) else before
+                merged[key] = replace(nearer, candidates=before.candidates + 1)
+    ranked = sorted(merged.values(), key=lambda limit: -limit.candidates)
+    if not ranked:
+        excluded = _ruled_out_everywhere(out)
+        return list(excluded)
+    return ranked
+
+
+def _overshoot(limit: LimitRecord) -> float:
+    if isinstance(limit.value, int | float) and isinstance(limit.limit, int | float) and limit.limit:
+        return abs(float(limit.value) / float(limit.limit))
+    return float("inf")
+
+
+def _ruled_out_everywhere(out: Outcome) -> Iterator[LimitRecord]:
+    """Yield a limit for every pick of which no option is left."""
+    if out.ledgers is None:
+        return
+    for ledger in out.ledgers.records({}):
+        if ledger.options and all(option.ruled_out for option in ledger.options):
+            words = [entry for option in ledger.options for entry in option.evidence if entry.stance == "rule_out"]
+            yield LimitRecord("mounting", f"every option of {ledger.pick} is ruled out: {words[0].why}", None, None, words[0].rule, [])
+
+
+def _trace(adviser: Adviser, out: Outcome, chosen: Tried | None, held: bool) -> Trace:
+    situation = out.situation
+    facts: list[FactRecord] = situation.records()
+    firings = list(out.firings)
+    candidates = []
+    if chosen is not None:
+        place = next((number for number, firing in enumerate(firings) if firing.stage == "caution"), len(firings))
+        firings[place:place] = list(chosen.firings)
+        if not held:
+            candidates.append(_candidate(chosen, "chosen"))
+            candidates.extend(_candidate(tried, "stands") for tried in out.stands[1:MOST_CANDIDATES_SHOWN])
+    if not held:
+        candidates.extend(_candidate(tried, "rejected") for tried in out.rejected[:MOST_CANDIDATES_SHOWN])
+    names = {} if chosen is None else {**{k.removeprefix("pick."): _name(v) for k, v in chosen.facts.items() if k.startswith("pick.")}, **out.separate}
+    if chosen is not None:
+        names["diameter_mm"] = f"{chosen.candidate.size.nominal_mm:g}"
+    ledgers = out.ledgers.records(names) if out.ledgers else []
+    calculations = chosen.plan.sheet.calculations() if chosen is not None and not held else []
+    if verdict_of(out) in ("ask",):
+        ledgers, candidates = [], []
+    return Trace(facts, firings, ledgers, candidates, calculations, out.candidates_possible)
+
+
+def _name(value: object) -> str:
+    return f"{value:g}" if isinstance(value, int | float) else str(value)

@@ -1,0 +1,162 @@
+"""What is looked up before the rules run: machine, interface, material, hardness, and the ratios of the job."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from typing import Any
+
+from millreason.errors import DataError, Finding, did_you_mean
+from millreason.facts import Situation, basis_record
+from millreason.formulas.drive_curve import available_power
+from millreason.formulas.motion import spindle_speed
+from millreason.formulas.passes import passes_across
+from millreason.job import Job
+from millreason.knowledge import Knowledge
+from millreason.materials import Materials
+from millreason.provenance import Basis
+from millreason.spindle import Spindle
+from millreason.trace import Question
+from millreason.vocabulary import Vocabulary
+
+
+@dataclass
+class FirstSituation:
+    """The facts before any rule has run, contradictions, and a question where the material is not clear."""
+
+    situation: Situation
+    contradictions: list[str] = field(default_factory=list)
+    question: Question | None = None
+
+
+def first_situation(job: Job, knowledge: Knowledge, materials: Materials, vocabulary: Vocabulary) -> FirstSituation:
+    """Collect what the person gave and what can be looked up for it.
+
+    Raises
+    ------
+    DataError
+        if the job names a machine that the knowledge does not have.
+    """
+    result = FirstSituation(Situation(vocabulary))
+    situation = result.situation
+    for name, entry in job.given.items():
+        if name != "work.hardness_hb":
+            situation.set(name, entry.value, "given", job.file, entry.text)
+    _look_up_machine(job, knowledge, situation)
+    _look_up_interface(knowledge, situation)
+    _look_up_material(job, materials, result)
+    return result
+
+
+def _look_up_machine(job: Job, knowledge: Knowledge, situation: Situation) -> None:
+    if job.machine_name is None:
+        return
+    machine = knowledge.machines.get(job.machine_name)
+    if machine is None:
+        hint = did_you_mean(job.machine_name, knowledge.machines)
+        raise DataError([Finding(job.file, 1, "machine.name", f"{job.machine_name!r} is no machine here.{hint} 'millreason machines' lists them.")])
+    file = knowledge.file_of("machines", machine.id)
+    for name, value in machine.facts().items():
+        basis = knowledge.basis(file, machine.basis_label(name.removeprefix("machine.")))
+        settled = tuple(tuple(item) if isinstance(item, list) else item for item in value) if isinstance(value, list) else value
+        situation.set(name, settled, "looked_up", f"machine {machine.id}", basis=_record(basis, machine.id in knowledge.from_shop))
+
+
+def _look_up_interface(knowledge: Knowledge, situation: Situation) -> None:
+    identity = situation.value("machine.interface")
+    if identity is None:
+        return
+    interface = knowledge.interfaces[identity]
+
+    def look_up(fact: str, value: Any, part: Any) -> None:
+        label = getattr(part, "basis", None)
+        basis = knowledge.basis("knowledge/interfaces.yaml", label) if label else None
+        situation.set(fact, value, "looked_up", f"interface {identity}", basis=_record(basis, False))
+
+    look_up("machine.taper_size", interface.size, interface.carries)
+    look_up("machine.taper_family", interface.family, interface.gauge)
+    look_up("machine.gauge_diameter_mm", interface.gauge.diameter_mm, interface.gauge)
+    look_up("machine.largest_usual_diameter_mm", interface.carries.largest_mm, interface.carries)
+    look_up("machine.largest_light_diameter_mm", interface.carries.light_mm, interface.carries)
+    look_up("machine.usual_power_kw", interface.drive.power_kw, interface.drive)
+    look_up("machine.usual_speed_max_rpm", interface.speed.most_rpm, interface.speed)
+    if interface.changer is not None:
+        for name in ("full_mm", "empty_mm", "mass_kg", "moment_nm"):
+            look_up(f"machine.usual_changer_{name}", getattr(interface.changer, name), interface.changer)
+
+
+def _look_up_material(job: Job, materials: Materials, result: FirstSituation) -> None:
+    situation = result.situation
+    given_hardness = job.given.get("work.hardness_hb")
+    written = situation.value("work.material")
+    found = materials.look_up(
+        written,
+        situation.value("work.iso_group"),
+        (float(given_hardness.value), given_hardness.unit) if given_hardness and isinstance(given_hardness.value, int | float) else None,
+        situation.value("work.condition"),
+    )
+    for fact in found.facts:
+        origin: Any = "given" if fact.given else "looked_up"
+        situation.set(fact.name, fact.value, origin, fact.by, fact.text, _record(fact.basis, fact.from_shop))
+    result.contradictions.extend(found.contradictions)
+    if found.question is not None:
+        result.question = Question("work.material", found.question, "Speed differs by a factor of five between steels alone.", "must", ["materials"])
+
+
+def _record(basis: Basis | None, from_shop: bool) -> Any:
+    from millreason.trace import BasisRecord
+
+    if from_shop:
+        return BasisRecord("shop", "", "the shop's own folder")
+    return basis_record(basis) if basis is not None else None
+
+
+def complete_situation(situation: Situation, knowledge: Knowledge, vocabulary: Vocabulary) -> None:
+    """Add the ratios of the job, once the gaps are filled."""
+    fact = situation.value
+
+    def ratio(name: str, upper: float | None, lower: float | None) -> None:
+        if upper is not None and lower:
+            situation.set(name, upper / lower, "computed", "ratio")
+
+    ratio("job.thickness_to_stock", fact("work.stock_mm"), fact("work.thickness_mm"))
+    ratio("job.floor_slenderness", fact("work.unsupported_span_mm"), fact("work.floor_thickness_mm"))
+    ratio("job.wall_slenderness", fact("work.wall_height_mm"), fact("work.wall_thickness_mm"))
+    ratio("job.overhang_to_gauge", fact("fixture.overhang_mm"), fact("machine.gauge_diameter_mm"))
+    ratio("job.width_to_largest_cutter", fact("work.width_mm"), fact("machine.largest_usual_diameter_mm"))
+    ratio("job.skin_to_stock", fact("work.skin_depth_mm"), fact("work.stock_mm"))
+    steps = fact("machine.speed_steps_rpm")
+    if steps:
+        situation.set("machine.speed_max_rpm", max(steps), "computed", "highest step")
+
+
+def size_facts(nominal_mm: float, situation: Situation, knowledge: Knowledge, tuning: Mapping[str, float], spindle: Spindle) -> dict[str, float]:
+    """Return the size.* facts of one diameter of the series for a job."""
+    fact, practice = situation.value, knowledge.practice
+    width = fact("work.width_mm")
+    most = tuning.get("width_to_diameter_most", math.inf)
+    one_pass = min(practice["width_to_diameter_one_pass"].high or 1.0, most)
+    single = fact("require.one_pass") or fact("require.no_overlap_line") or fact("work.feature") == "slot"
+    passes = 1 if single or width <= one_pass * nominal_mm else passes_across(width, nominal_mm, practice["pass_overlap_mm"].number, min(practice["width_to_diameter_most"].number, most))
+    strip = (width + (passes - 1) * practice["pass_overlap_mm"].number) / passes
+    speed = spindle_speed(fact("material.speed_start_m_min"), nominal_mm)
+    at = min(speed, spindle.speed_max_rpm)
+    full = max(power for _, power in spindle.net_curve)
+    facts: dict[str, float | None] = {
+        "size.diameter_mm": nominal_mm,
+        "size.width_to_diameter": strip / nominal_mm,
+        "size.passes_across": float(passes),
+        "size.to_usual_largest": _over(nominal_mm, fact("machine.largest_usual_diameter_mm")),
+        "size.to_light_largest": _over(nominal_mm, fact("machine.largest_light_diameter_mm")),
+        "size.to_changer": _over(nominal_mm, fact("machine.changer_full_mm") if fact("machine.changer_state") == "full" else fact("machine.changer_empty_mm", fact("machine.changer_full_mm"))),
+        "size.to_changer_full": _over(nominal_mm, fact("machine.changer_full_mm")),
+        "size.to_pocket": _over(nominal_mm, min(width, fact("work.length_mm"))) if fact("work.feature") == "closed_pocket" else None,
+        "size.speed_use": speed / spindle.speed_max_rpm,
+        "size.torque_share": min(available_power(spindle.net_curve, at) / full, 1.0),
+    }
+    return {name: value for name, value in facts.items() if value is not None}
+
+
+def _over(value: float, limit: float | None) -> float | None:
+    return value / limit if limit else None
