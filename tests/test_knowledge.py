@@ -1,4 +1,4 @@
-"""The knowledge files: they load, agree with themselves and the vocabulary, and errors in them are located."""
+"""The knowledge files: they load, agree with themselves, and errors in them are located."""
 
 import shutil
 import time

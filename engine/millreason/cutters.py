@@ -104,7 +104,7 @@ class RunOutClass(Record):
 
 
 class RunOutCeiling(Record):
-    """The most run-out of main edges that a standard allows: between neighbours, and between opposite teeth."""
+    """The most run-out of main edges that a standard allows, between neighbours and across."""
 
     to_mm: PositiveFloat
     adjacent_mm: PositiveFloat
