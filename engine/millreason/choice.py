@@ -13,7 +13,7 @@ from millreason.facts import Situation, basis_record
 from millreason.inference import Firing
 from millreason.job import Job, read_job
 from millreason.knowledge import Knowledge, load_knowledge
-from millreason.lookups import complete_situation, first_situation, size_facts
+from millreason.lookups import complete_situation, first_situation, look_up_usual, size_facts
 from millreason.materials import Materials, load_materials
 from millreason.measures import BODY_FACTS, CUT_FACTS, Meter
 from millreason.own_cutters import own_candidates, own_cutters
@@ -171,15 +171,31 @@ class _Run:
 
     # ------------------------------------------------------------------ assume and appraise
     def _fill_gaps(self) -> None:
+        """Run the assuming rules until nothing new can be looked up for what they have assumed."""
+        while self._assume() | look_up_usual(self._situation, self._adviser.knowledge):
+            pass
+        self._out.questions = {fact: question for fact, question in self._out.questions.items() if self._open(fact)}
+
+    def _open(self, fact: str) -> bool:
+        return fact == "work.material" or self._situation.value(fact) is None
+
+    def _assume(self) -> bool:
         stage = self._adviser.stages["assume"]
+        new = False
         for firing in stage.run(self._situation):
-            self._record(stage, firing)
             then = stage.rules[firing.rule].then
+            if then.ask and then.ask in self._out.questions and self._fired(firing.rule):
+                continue
+            self._record(stage, firing)
             for fact, value in (then.assume or {}).items():
                 settled = self._situation.value(value["fact"]) if isinstance(value, dict) else value
-                self._set(fact, settled, "assumed", firing.rule, stage)
+                new = self._set(fact, settled, "assumed", firing.rule, stage) or new
             if then.ask:
                 self._question(then.ask, then.need or "useful", firing.rule)
+        return new
+
+    def _fired(self, rule: str) -> bool:
+        return any(firing.rule == rule for firing in self._out.firings)
 
     def _appraise(self) -> None:
         stage = self._adviser.stages["appraise"]
@@ -197,13 +213,13 @@ class _Run:
             if then.refuse:
                 self._out.limits.append(self._limit(stage, firing.rule, then.refuse, self._situation))
 
-    def _set(self, fact: str, value: Any, origin: Any, rule: str, stage: Stage) -> None:
+    def _set(self, fact: str, value: Any, origin: Any, rule: str, stage: Stage) -> bool:
         definition = self._vocabulary.facts[fact]
         if definition.kind in ("choices", "numbers") and value is not None and not isinstance(value, tuple):
             value = (value,)
         if definition.kind == "number" and value is not None:
             value = float(value)
-        self._situation.set(fact, value, origin, rule, basis=basis_record(stage.rules[rule].basis))
+        return self._situation.set(fact, value, origin, rule, basis=basis_record(stage.rules[rule].basis))
 
     def _question(self, fact: str, need: Any, rule: str) -> None:
         before = self._out.questions.get(fact)

@@ -13,7 +13,7 @@ from millreason.vocabulary import FactDefinition, Vocabulary
 from millreason.yaml_source import Document, Key, parse_yaml, read_yaml
 
 Value = str | float | bool | tuple[str, ...] | tuple[float, ...] | tuple[tuple[float, float], ...]
-SECTIONS = ("job", "work", "require", "machine", "fixture", "confirm", "costs", "cutters", "existing", "notes", "invented")
+SECTIONS = ("job", "title", "work", "require", "machine", "fixture", "confirm", "costs", "cutters", "existing", "notes", "invented")
 CASE_SECTIONS = ("case", "job", "expect")
 LEAD_EQUAL_TO_KAPPA_DEG = 45.0
 
@@ -109,8 +109,8 @@ class _Reader:
             key = (*base, name)
             if name not in SECTIONS:
                 self._say(key, f"unknown section.{did_you_mean(name, SECTIONS)} Sections: {', '.join(SECTIONS)}.")
-            elif name in ("job", "notes", "invented"):
-                title, notes = (str(value), notes) if name == "job" else (title, str(value) if name == "notes" else notes)
+            elif name in ("job", "title", "notes", "invented"):
+                title, notes = (str(value), notes) if name in ("job", "title") else (title, str(value) if name == "notes" else notes)
             elif name == "cutters":
                 cutters = tuple(self._cutters(key, value))
             elif name == "existing":

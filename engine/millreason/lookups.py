@@ -49,6 +49,22 @@ def first_situation(job: Job, knowledge: Knowledge, materials: Materials, vocabu
     return result
 
 
+def look_up_usual(situation: Situation, knowledge: Knowledge) -> bool:
+    """Look up what is usual for the interface and drive as they are known by now; return whether anything is new."""
+    practice, before = knowledge.practice, len(situation.records())
+    _look_up_interface(knowledge, situation)
+    drive = situation.value("machine.drive")
+    by_drive = practice["efficiency_by_drive"]
+    efficiency = practice["efficiency_default"] if drive is None else by_drive
+    label = efficiency.basis_label(drive)
+    value = efficiency.number if drive is None else by_drive.of(drive)
+    file = "knowledge/practice.yaml"
+    situation.set("machine.usual_efficiency", value, "looked_up", f"{file}", basis=_record(knowledge.basis(file, label), False))
+    base = practice["base_speed_default_rpm"]
+    situation.set("machine.usual_base_speed_rpm", base.number, "looked_up", file, basis=_record(knowledge.basis(file, base.basis_label()), False))
+    return len(situation.records()) > before
+
+
 def _look_up_machine(job: Job, knowledge: Knowledge, situation: Situation) -> None:
     if job.machine_name is None:
         return
