@@ -385,6 +385,31 @@ def test_an_error_of_the_extension_is_one_of_ours(monkeypatch):
 
 
 @needs_durable
+@pytest.mark.parametrize("interrupted", ["assert_fact", "start_action_for_state"])
+def test_a_session_that_did_not_start_is_neither_deleted_nor_used_again(monkeypatch, interrupted):
+    extension = pytest.importorskip("durable_rules_engine")
+    engine = make_engine([InferenceRule("R", (Test("a", "ge", 1),))], "durable")
+    deleted, delete = [], extension.delete_state
+    monkeypatch.setattr(
+        extension, "delete_state", lambda handle, sid: deleted.append(sid) or delete(handle, sid)
+    )
+
+    def interrupt(*given):
+        raise KeyboardInterrupt
+
+    for _ in range(3):
+        with monkeypatch.context() as patch:
+            patch.setattr(extension, interrupted, interrupt)
+            with pytest.raises(KeyboardInterrupt):
+                engine.run([Fact("a", 1)], lambda rule, chosen: [])
+        assert deleted == []
+    for _ in range(3):
+        assert len(engine.run([Fact("a", 1)], lambda rule, chosen: [])) == 1
+    assert len(deleted) == 3
+    engine.close()
+
+
+@needs_durable
 def test_no_fact_of_thousands_is_taken_for_another():
     engine = make_engine([InferenceRule("R", (Test("a", "not_in", ("x",)),))], "durable")
     facts = [Fact("a", value) for n in range(3_000) for value in (n, str(n), n + 0.5)]
@@ -404,9 +429,8 @@ def test_an_action_may_take_long():
 
 
 GROWTH = """
-import gc, resource, sys
-unit = 1 if sys.platform == "darwin" else 1024
-def peak(): return resource.getrusage(resource.RUSAGE_SELF).ru_maxrss * unit
+import gc, pathlib, resource
+def used(): return int(pathlib.Path("/proc/self/statm").read_text().split()[1]) * resource.getpagesize()
 rules = [InferenceRule(f"R{n}", (Test(f"a{n % 40}", "ge", n), Test("b", "eq", "x"))) for n in range(60)]
 engine = make_engine(rules, "durable")
 def fail(rule, facts): raise ValueError
@@ -416,15 +440,16 @@ def session(n):
     except RuleActionError: pass
 def compile(n): make_engine(rules, "durable").run([Fact("b", "x"), Fact("a0", n)], nothing)
 for n in range(WARM): WORK(n)
-before = peak()
+gc.collect()
+before = used()
 for n in range(MORE): WORK(n)
 gc.collect()
-print(peak() - before)
+print(used() - before)
 """
 
 
 @needs_durable
-@pytest.mark.skipif(sys.platform == "win32", reason="the resource module is missing there")
+@pytest.mark.skipif(sys.platform != "linux", reason="reads the memory in use from /proc")
 @pytest.mark.parametrize(
     ("work", "warm", "more"),
     [("session", 500, 3_000), ("compile", 20, 100)],
