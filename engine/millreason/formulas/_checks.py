@@ -48,6 +48,14 @@ def between(quantity: str, value: float, low: float, high: float) -> float:
     return min(max(number, low), high)
 
 
+def at_least(quantity: str, value: float, low: float) -> float:
+    """Return a finite number not below ``low``."""
+    number = finite(quantity, value)
+    if number < low:
+        raise OutOfRangeError(quantity, value, f"a finite number, at least {low:g}")
+    return number
+
+
 def inside(quantity: str, value: float, low: float, high: float) -> float:
     """Return a finite number strictly between two ends."""
     number = _as_number(quantity, value)

@@ -276,7 +276,7 @@ def gullet_fill(chip_volume_mm3: float, chip_form_ratio: float, gullet_volume_mm
     sep-1178, klocke-koenig-fertigungsverfahren-1
     """
     volume = check.positive("chip volume [mm3]", chip_volume_mm3)
-    ratio = check.between("chip form ratio", chip_form_ratio, 1.0, check.LARGEST)
+    ratio = check.at_least("chip form ratio", chip_form_ratio, 1.0)
     return volume * ratio / check.positive("gullet volume [mm3]", gullet_volume_mm3)
 
 

@@ -83,8 +83,8 @@ def specific_cutting_force(
     Notes
     -----
     Fitted to thicknesses of about 0.05 to 2.5 mm; thinner chips need more. Tests were turned with sharp
-    tools. Using the mean thickness of the arc overstates mean power by at most 4 % for an exponent up to
-    0.3 and by at most 5 % up to 0.45.
+    tools. Using the mean thickness of the arc overstates mean power by at most 5 % for an exponent up to
+    0.3 and by at most 6.5 % up to 0.45.
 
     Examples
     --------

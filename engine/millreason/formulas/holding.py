@@ -169,7 +169,7 @@ def clamp_force_needed(lift_n: float, factor: float) -> float:
     common practice
     """
     lift = check.not_negative("lift [N]", lift_n)
-    return lift * check.between("clamping factor", factor, 1.0, check.LARGEST)
+    return lift * check.at_least("clamping factor", factor, 1.0)
 
 
 def slip_factor(hold_down_n: float, lift_n: float, friction: float, sideways_n: float) -> float:

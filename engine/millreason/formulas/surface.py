@@ -66,8 +66,8 @@ def radius_roughness(feed_mm: float, corner_radius_mm: float) -> Roughness:
 
     Notes
     -----
-    Parabola for the arc: Rt at most 7 % below the exact arc while the feed is within the radius. Ra after the
-    textbook's 32; the exact mean of the parabola has 31.2 and is 2.6 % higher. Real surfaces are rougher.
+    Parabola for the arc: Rt at most 7.2 % below the exact arc while the feed is within the radius. Ra after
+    the textbook's 32; the exact mean of the parabola has 31.2 and is 2.6 % higher. Real surfaces are rougher.
 
     Examples
     --------
@@ -294,7 +294,7 @@ def land_needed(feed_per_turn_mm: float, overlap: float) -> float:
     common practice
     """
     feed = check.positive("feed per turn [mm]", feed_per_turn_mm)
-    return feed * check.between("overlap of the land", overlap, 1.0, check.LARGEST)
+    return feed * check.at_least("overlap of the land", overlap, 1.0)
 
 
 def tilted_land_roughness(feed_mm: float, tilt_deg: float) -> float:

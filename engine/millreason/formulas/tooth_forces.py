@@ -247,7 +247,7 @@ def mean_plane_forces(
     Notes
     -----
     Takes kc as constant over the arc. Against an integration with Kienzle's law either component differs by
-    at most 5 % of the mean tangential and radial force together, for exponents up to 0.3.
+    at most 8 % of the mean tangential and radial force together, for exponents up to 0.3.
 
     Examples
     --------
