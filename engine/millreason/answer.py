@@ -54,6 +54,7 @@ def write_answer(adviser: Adviser, out: Outcome, openings: bool = True) -> Answe
         questions=_questions(adviser, out),
         conditions=list(out.conditions.values()),
         contradictions=list(out.contradictions),
+        notes=list(out.notes),
         refusal=refusal,
         runners_up=[] if held or not chosen else [_candidate(tried, "stands") for tried in _others(out)],
         robustness=robustness(adviser, out, chosen) if chosen and not held else "",

@@ -14,7 +14,7 @@ from millreason.inference import Firing
 from millreason.job import Job, read_job
 from millreason.knowledge import Knowledge, load_knowledge
 from millreason.lookups import complete_situation, first_situation, look_up_usual, size_facts
-from millreason.materials import Materials, load_materials
+from millreason.materials import MaterialBook, load_materials
 from millreason.measures import BODY_FACTS, CUT_FACTS, Meter
 from millreason.own_cutters import own_candidates, own_cutters
 from millreason.plan import Plan, Planner
@@ -59,6 +59,7 @@ class Outcome:
     questions: dict[str, Question] = field(default_factory=dict)
     conditions: dict[str, Question] = field(default_factory=dict)
     contradictions: list[str] = field(default_factory=list)
+    notes: list[str] = field(default_factory=list)
     ledgers: Ledgers | None = None
     separate: dict[str, str] = field(default_factory=dict)
     stands: list[Tried] = field(default_factory=list)
@@ -78,7 +79,7 @@ class Outcome:
 class Adviser:
     """The program with its knowledge and rules loaded; it answers any number of jobs."""
 
-    def __init__(self, knowledge: Knowledge, materials: Materials, vocabulary: Vocabulary, rulebook: RuleBook, engine: str | None = None) -> None:
+    def __init__(self, knowledge: Knowledge, materials: MaterialBook, vocabulary: Vocabulary, rulebook: RuleBook, engine: str | None = None) -> None:
         self.knowledge = knowledge
         self.materials = materials
         self.vocabulary = vocabulary
@@ -130,7 +131,7 @@ def load_adviser(shop: Path | None = None, engine: str | None = None, root: Path
     knowledge = load_knowledge(root, shop)
     vocabulary = load_vocabulary(knowledge.root)
     rulebook = load_rules(knowledge.root, vocabulary, shop, knowledge.sources, knowledge.strengths)
-    return Adviser(knowledge, load_materials(knowledge.root, shop), vocabulary, rulebook, engine)
+    return Adviser(knowledge, load_materials(knowledge.root, (shop,) if shop else ()), vocabulary, rulebook, engine)
 
 
 class _Run:
@@ -143,7 +144,7 @@ class _Run:
         first = first_situation(job, adviser.knowledge, adviser.materials, adviser.vocabulary)
         self._situation = first.situation
         tuning = Tuning({name: entry.how for name, entry in adviser.vocabulary.adjustables.items()}, {}, {})
-        self._out = Outcome(job, self._situation, tuning, contradictions=list(first.contradictions))
+        self._out = Outcome(job, self._situation, tuning, contradictions=list(first.contradictions), notes=list(first.notes))
         if first.question is not None:
             self._out.questions[first.question.fact] = first.question
 

@@ -14,11 +14,19 @@ from millreason.formulas.motion import spindle_speed
 from millreason.formulas.passes import passes_across
 from millreason.job import Job
 from millreason.knowledge import Knowledge
-from millreason.materials import Materials
+from millreason.material_lookup import look_up_material
+from millreason.materials import MaterialBook
 from millreason.provenance import Basis
 from millreason.spindle import Spindle
 from millreason.trace import Question
 from millreason.vocabulary import Vocabulary
+
+
+# Which fluid of a plan each supply of a machine gives; a cut can always be dry.
+_SUPPLIES = {
+    "air": "air_blast", "flood": "flood", "flood_water_mixed": "flood", "mg_rated_fluid": "flood", "through_tool": "through_tool",
+    "mql": "mql", "mineral_oil": "mineral_oil", "brush_oil": "brush_oil",
+}  # fmt: skip
 
 
 @dataclass
@@ -27,10 +35,11 @@ class FirstSituation:
 
     situation: Situation
     contradictions: list[str] = field(default_factory=list)
+    notes: list[str] = field(default_factory=list)
     question: Question | None = None
 
 
-def first_situation(job: Job, knowledge: Knowledge, materials: Materials, vocabulary: Vocabulary) -> FirstSituation:
+def first_situation(job: Job, knowledge: Knowledge, materials: MaterialBook, vocabulary: Vocabulary) -> FirstSituation:
     """Collect what the person gave and what can be looked up for it.
 
     Raises
@@ -45,7 +54,7 @@ def first_situation(job: Job, knowledge: Knowledge, materials: Materials, vocabu
             situation.set(name, entry.value, "given", job.file, entry.text)
     _look_up_machine(job, knowledge, situation)
     _look_up_interface(knowledge, situation)
-    _look_up_material(job, materials, result)
+    _look_up_material(job, materials, vocabulary, result)
     return result
 
 
@@ -72,11 +81,12 @@ def _look_up_machine(job: Job, knowledge: Knowledge, situation: Situation) -> No
     if machine is None:
         hint = did_you_mean(job.machine_name, knowledge.machines)
         raise DataError([Finding(job.file, 1, "machine.name", f"{job.machine_name!r} is no machine here.{hint} 'millreason machines' lists them.")])
-    file = knowledge.file_of("machines", machine.id)
+    from_shop = machine.id in knowledge.from_shop
     for name, value in machine.facts().items():
-        basis = knowledge.basis(file, machine.basis_label(name.removeprefix("machine.")))
+        label = machine.basis_label(name.removeprefix("machine."))
+        basis = None if from_shop else knowledge.basis("knowledge/machines.yaml", label)
         settled = tuple(tuple(item) if isinstance(item, list) else item for item in value) if isinstance(value, list) else value
-        situation.set(name, settled, "looked_up", f"machine {machine.id}", basis=_record(basis, machine.id in knowledge.from_shop))
+        situation.set(name, settled, "looked_up", f"machine {machine.id}", basis=_record(basis, from_shop))
 
 
 def _look_up_interface(knowledge: Knowledge, situation: Situation) -> None:
@@ -102,22 +112,21 @@ def _look_up_interface(knowledge: Knowledge, situation: Situation) -> None:
             look_up(f"machine.usual_changer_{name}", getattr(interface.changer, name), interface.changer)
 
 
-def _look_up_material(job: Job, materials: Materials, result: FirstSituation) -> None:
+def _look_up_material(job: Job, materials: MaterialBook, vocabulary: Vocabulary, result: FirstSituation) -> None:
     situation = result.situation
-    given_hardness = job.given.get("work.hardness_hb")
-    written = situation.value("work.material")
-    found = materials.look_up(
-        written,
-        situation.value("work.iso_group"),
-        (float(given_hardness.value), given_hardness.unit) if given_hardness and isinstance(given_hardness.value, int | float) else None,
-        situation.value("work.condition"),
-    )
+    options = {name: vocabulary.facts[name].options for name in ("work.skin_words", "work.form_words")}
+    found = look_up_material(
+        materials, situation.value("work.material"), situation.value("work.condition"), situation.value("work.iso_group"),
+        job.given.get("work.hardness_hb"), options,
+    )  # fmt: skip
     for fact in found.facts:
         origin: Any = "given" if fact.given else "looked_up"
-        situation.set(fact.name, fact.value, origin, fact.by, fact.text, _record(fact.basis, fact.from_shop))
+        situation.set(fact.name, fact.value, origin, fact.by, fact.text, fact.basis)
     result.contradictions.extend(found.contradictions)
+    result.notes.extend(found.notes)
     if found.question is not None:
-        result.question = Question("work.material", found.question, "Speed differs by a factor of five between steels alone.", "must", ["materials"])
+        because = vocabulary.facts["work.material"].because or ""
+        result.question = Question("work.material", found.question, because, "must", ["materials"])
 
 
 def _record(basis: Basis | None, from_shop: bool) -> Any:
@@ -142,6 +151,9 @@ def complete_situation(situation: Situation, knowledge: Knowledge, vocabulary: V
     ratio("job.overhang_to_gauge", fact("fixture.overhang_mm"), fact("machine.gauge_diameter_mm"))
     ratio("job.width_to_largest_cutter", fact("work.width_mm"), fact("machine.largest_usual_diameter_mm"))
     ratio("job.skin_to_stock", fact("work.skin_depth_mm"), fact("work.stock_mm"))
+    fluids = fact("machine.fluids") or ()
+    supplied = ("dry", *(_SUPPLIES[fluid] for fluid in fluids if fluid in _SUPPLIES))
+    situation.set("machine.coolants", tuple(dict.fromkeys(supplied)), "computed", "fluids of the machine")
     steps = fact("machine.speed_steps_rpm")
     if steps:
         situation.set("machine.speed_max_rpm", max(steps), "computed", "highest step")

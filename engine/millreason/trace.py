@@ -312,6 +312,7 @@ class Answer:
     questions: list[Question]
     conditions: list[Question]
     contradictions: list[str]
+    notes: list[str]
     refusal: Refusal | None
     runners_up: list[CandidateRecord]
     robustness: str
