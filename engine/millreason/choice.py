@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, field
-from functools import cached_property
+from functools import cache, cached_property
 from pathlib import Path
 from typing import Any
 
@@ -418,6 +418,12 @@ def _kin(candidate: Candidate) -> tuple[tuple[Any, ...], ...]:
     return body, cut, (*cut, candidate.corner.corner, candidate.wiper)
 
 
+@cache
+def shipped_adviser() -> Adviser:
+    """Return the adviser with the shipped knowledge and the default engine, loaded once."""
+    return load_adviser()
+
+
 def choose_file(path: Path | str) -> Answer:
     """Answer the job in a file with the shipped knowledge."""
-    return load_adviser().choose_file(path)
+    return shipped_adviser().choose_file(path)
