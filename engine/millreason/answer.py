@@ -2,12 +2,12 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
 from dataclasses import replace
 from typing import TYPE_CHECKING
 
 from millreason import __version__
 from millreason.checks import make_checks, robustness
+from millreason.limits import binding_limits
 from millreason.openings import find_openings
 from millreason.plan_record import make_plan_record
 from millreason.trace import (
@@ -15,7 +15,6 @@ from millreason.trace import (
     CandidateRecord,
     CautionRecord,
     FactRecord,
-    LimitRecord,
     Picks,
     Question,
     Refusal,
@@ -176,43 +175,6 @@ def _refusal(adviser: Adviser, out: Outcome, openings: bool) -> Refusal:
     found = find_openings(adviser, out, limits) if openings else []
     offers = [then.offer for _, then in out.cautions if then.offer]
     return Refusal(limits, found, list(dict.fromkeys(offers)))
-
-
-def binding_limits(out: Outcome) -> list[LimitRecord]:
-    """Return the limits that bind: those of the rules that refuse, else of the candidates that came nearest."""
-    if out.limits:
-        return out.limits
-    merged: dict[tuple[str, str], LimitRecord] = {}
-    for tried in out.rejected:
-        for limit in tried.limits:
-            key = limit.key, limit.rule
-            before = merged.get(key)
-            if before is None:
-                merged[key] = limit
-            else:
-                nearer = limit if _overshoot(limit) < _overshoot(before) else before
-                merged[key] = replace(nearer, candidates=before.candidates + 1)
-    ranked = sorted(merged.values(), key=lambda limit: -limit.candidates)
-    if not ranked:
-        excluded = _ruled_out_everywhere(out)
-        return list(excluded)
-    return ranked
-
-
-def _overshoot(limit: LimitRecord) -> float:
-    if isinstance(limit.value, int | float) and isinstance(limit.limit, int | float) and limit.limit:
-        return abs(float(limit.value) / float(limit.limit))
-    return float("inf")
-
-
-def _ruled_out_everywhere(out: Outcome) -> Iterator[LimitRecord]:
-    """Yield a limit for every pick of which no option is left."""
-    if out.ledgers is None:
-        return
-    for ledger in out.ledgers.records({}):
-        if ledger.options and all(option.ruled_out for option in ledger.options):
-            words = [entry for option in ledger.options for entry in option.evidence if entry.stance == "rule_out"]
-            yield LimitRecord("mounting", f"every option of {ledger.pick} is ruled out: {words[0].why}", None, None, words[0].rule, [])
 
 
 def _trace(adviser: Adviser, out: Outcome, chosen: Tried | None, held: bool) -> Trace:

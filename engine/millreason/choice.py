@@ -13,6 +13,7 @@ from millreason.facts import Situation, basis_record
 from millreason.inference import Firing
 from millreason.job import Job, read_job
 from millreason.knowledge import Knowledge, load_knowledge
+from millreason.limits import binding_limits
 from millreason.lookups import complete_situation, first_situation, look_up_usual, size_facts
 from millreason.materials import MaterialBook, load_materials
 from millreason.measures import BODY_FACTS, CUT_FACTS, Meter
@@ -65,6 +66,7 @@ class Outcome:
     stands: list[Tried] = field(default_factory=list)
     rejected: list[Tried] = field(default_factory=list)
     limits: list[LimitRecord] = field(default_factory=list)
+    excluded: list[LimitRecord] = field(default_factory=list)
     cautions: list[tuple[FiringRecord, Conclusion]] = field(default_factory=list)
     candidates_possible: int = 0
     meter: Meter | None = None
@@ -239,7 +241,7 @@ class _Run:
         stage = self._adviser.stages["weigh"]
         for firing in stage.run(self._situation):
             record = self._record(stage, firing)
-            self._write_evidence(stage.rules[firing.rule].then, record, None)
+            self._write_evidence(stage, record, None, self._situation)
         for nominal_mm in self._sizes():
             self._weigh_size(nominal_mm)
         for pick in SEPARATE_PICKS:
@@ -264,10 +266,13 @@ class _Run:
         for firing in stage.run(situation):
             record = stage.record(firing, situation, self._out.job.units, f"D {nominal_mm:g}")
             self._out.firings.append(record)
-            self._write_evidence(stage.rules[firing.rule].then, record, nominal_mm)
+            self._write_evidence(stage, record, nominal_mm, situation)
 
-    def _write_evidence(self, then: Conclusion, record: FiringRecord, size: float | None) -> None:
+    def _write_evidence(self, stage: Stage, record: FiringRecord, size: float | None, situation: Situation) -> None:
         assert self._out.ledgers is not None
+        then = stage.rules[record.rule].then
+        if then.limit:
+            self._out.excluded.append(self._limit(stage, record.rule, then.limit, situation))
         stance: Any = "for" if then.for_ else "against" if then.against else "rule_out"
         strength = then.strength or "rule_out"
         weight = self._adviser.knowledge.strengths[strength].weight if then.strength else 0.0
@@ -385,7 +390,7 @@ class _Run:
             facts["answer.missing"] = ("some",)
         elif not out.stands:
             facts["answer.verdict"] = "refuse"
-            keys = [limit.key for limit in out.limits] + [limit.key for tried in out.rejected for limit in tried.limits]
+            keys = [limit.key for limit in binding_limits(out)]
             facts["answer.limits"] = tuple(dict.fromkeys(keys))
         elif out.conditions:
             facts["answer.verdict"] = "conditional"

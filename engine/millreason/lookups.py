@@ -151,6 +151,11 @@ def complete_situation(situation: Situation, knowledge: Knowledge, vocabulary: V
     ratio("job.overhang_to_gauge", fact("fixture.overhang_mm"), fact("machine.gauge_diameter_mm"))
     ratio("job.width_to_largest_cutter", fact("work.width_mm"), fact("machine.largest_usual_diameter_mm"))
     ratio("job.skin_to_stock", fact("work.skin_depth_mm"), fact("work.stock_mm"))
+    width = fact("work.width_mm")
+    if width is not None:
+        share = knowledge.practice["width_to_diameter_one_pass"]
+        situation.set("job.one_pass_diameter_mm", width / (share.high or 1.0), "computed", "width over the largest share of the diameter")
+        situation.set("job.one_pass_roomy_diameter_mm", width / (share.value or 1.0), "computed", "width over the usual share of the diameter")
     fluids = fact("machine.fluids") or ()
     supplied = ("dry", *(_SUPPLIES[fluid] for fluid in fluids if fluid in _SUPPLIES))
     situation.set("machine.coolants", tuple(dict.fromkeys(supplied)), "computed", "fluids of the machine")

@@ -71,7 +71,7 @@ class CautionSpec(_Strict):
 
 
 class Conclusion(_Strict):
-    """What a rule concludes; exactly one of the fields (strength goes with for, against and lower)."""
+    """What a rule concludes: exactly one thing, with a strength (for, against) or the limit it rests on (rule_out)."""
 
     assume: dict[str, Scalar | dict[Literal["fact"], str]] | None = None
     ask: str | None = None
@@ -83,6 +83,7 @@ class Conclusion(_Strict):
     for_: dict[str, Scalar | list[Scalar]] | None = Field(default=None, alias="for")
     against: dict[str, Scalar | list[Scalar]] | None = None
     rule_out: dict[str, Scalar | list[Scalar]] | None = None
+    limit: RejectSpec | None = None
     strength: str | None = None
     reject: RejectSpec | None = None
     lower: str | None = None
@@ -101,6 +102,8 @@ class Conclusion(_Strict):
             raise ValueError(f"a rule concludes exactly one thing, found {', '.join(given) or 'none'}")
         if (self.strength is not None) != (given[0] in ("for_", "against")):
             raise ValueError("'strength' goes with 'for' and 'against', and only with them")
+        if self.limit is not None and given[0] != "rule_out":
+            raise ValueError("'limit' names what a 'rule_out' rests on, and goes only with it")
         if (self.need is not None) != (given[0] == "ask"):
             raise ValueError("'need' (must or useful) goes with 'ask', and only with it")
         return self
@@ -287,7 +290,7 @@ class _Checker:
         strength = then.strength or then.lower
         if strength and self._strengths is not None and strength not in self._strengths:
             yield f"unknown strength {strength!r}. Strengths are in knowledge/strengths.yaml: {', '.join(sorted(self._strengths))}."
-        yield from self._limit(then.reject or then.refuse)
+        yield from self._limit(then.reject or then.refuse or then.limit)
 
     def _limit(self, spec: RejectSpec | None) -> Iterable[str]:
         if spec is None:
