@@ -122,7 +122,39 @@ def test_texts_are_sentences(rule_id: str) -> None:
             f"{part} begins in the middle: {text}"
         )
         assert len(text.split()) <= MOST_WORDS, f"{part} is too long to be read at once: {text}"
-        assert not re.search(r"\s{2}|TODO|\bblah\b", text)
+        assert not re.search(r"\s{2}", text), f"{part} has a gap: {text}"
+
+
+# A stage after the questions runs only on jobs in which these are known.
+ALWAYS_KNOWN = {
+    "work.width_mm", "work.length_mm", "work.stock_mm", "material.name", "material.iso_group",
+    "machine.interface",
+    "machine.power_kw", "machine.largest_usual_diameter_mm", "job.one_pass_least_mm", "job.one_pass_most_mm",
+    "require.finish_ra_um",
+}  # fmt: skip
+# A ratio is known only where its limit is; a judgement only where what it rests on is.
+RESTS_ON = {
+    "plan.changer_full_use": {"machine.changer_full_mm"},
+    "plan.changer_empty_use": {"machine.changer_empty_mm"},
+    "plan.mass_use": {"machine.changer_mass_kg"},
+    "plan.moment_use": {"machine.changer_moment_nm"},
+    "plan.feed_use": {"machine.feed_max_mm_min"},
+    "plan.flatness_use": {"require.flatness_mm"},
+    "plan.corner_use": {"work.corner_radius_mm"},
+    "cut.interrupted": {"work.interruptions"},
+    "material.kind": {"work.material"},
+}
+
+
+def is_known(fact: str, rule: Rule) -> bool:
+    """Tell whether a fact must be known when a rule fires."""
+    condition = rule.when.get(fact)
+    if condition is not None:
+        return not (isinstance(condition, TestSpec) and condition.known is False)
+    beside_a_plan = rule.stage == "judge" or any(name.startswith(("pick.", "plan.")) for name in rule.when)
+    if fact.startswith(("pick.", "plan.")):
+        return beside_a_plan
+    return fact in ALWAYS_KNOWN or any(fact in RESTS_ON.get(name, ()) for name in rule.when)
 
 
 @pytest.mark.parametrize("rule_id", rule_ids())
@@ -130,25 +162,4 @@ def test_placeholders_are_known_when_the_rule_fires(rule_id: str) -> None:
     rule = book().rules[rule_id]
     for part, text in texts(rule).items():
         for fact in PLACEHOLDER.findall(text):
-            condition = rule.when.get(fact)
-            always = fact in ALWAYS_KNOWN or (fact.startswith(("pick.", "plan.")) and plan_is_there(rule))
-            assert condition is not None or always, f"{part} of {rule_id} prints {fact}, which may be unknown"
-            assert not (isinstance(condition, TestSpec) and condition.known is False), (
-                f"{rule_id} prints {fact}, which it needs unknown"
-            )
-
-
-# A stage after the questions runs only on jobs in which these are known.
-ALWAYS_KNOWN = {
-    "work.width_mm",
-    "work.length_mm",
-    "work.stock_mm",
-    "material.name",
-    "material.iso_group",
-    "require.finish_ra_um",
-}
-
-
-def plan_is_there(rule: Rule) -> bool:
-    """Tell whether a rule fires only beside a candidate with its plan."""
-    return rule.stage == "judge" or any(fact.startswith(("pick.", "plan.")) for fact in rule.when)
+            assert is_known(fact, rule), f"{part} of {rule_id} prints {fact}, which may be unknown"
