@@ -1,20 +1,21 @@
 from __future__ import annotations
 
 import json
-from dataclasses import replace
-from html.parser import HTMLParser
 
 import jsonschema
 import pytest
-import yaml
 
 import answers
 from millreason.report import FORMS, render, schema
 from millreason.trace import Answer
 
 ANSWERS = {
-    "recommended": answers.recommended, "inches": answers.in_inches, "asking": answers.asking, "refused": answers.refused, "held": answers.held_back,
-}  # fmt: skip
+    "recommended": answers.recommended,
+    "inches": answers.in_inches,
+    "asking": answers.asking,
+    "refused": answers.refused,
+    "held": answers.held_back,
+}
 
 
 @pytest.fixture(params=ANSWERS)

@@ -17,14 +17,29 @@ if TYPE_CHECKING:
 
 Form = Literal["terminal", "html", "markdown", "json", "quote"]
 FORMS: tuple[Form, ...] = ("terminal", "html", "markdown", "json", "quote")
-_TONES: dict[str, Tone] = {"recommend": "good", "recommend_with_warnings": "caution", "conditional": "stop", "ask": "note", "refuse": "warning"}
+_TONES: dict[str, Tone] = {
+    "recommend": "good",
+    "recommend_with_warnings": "caution",
+    "conditional": "stop",
+    "ask": "note",
+    "refuse": "warning",
+}
 DEFERENCE = (
-    "Advice, not an order: local codes, the limits of the machine and of the tool as their makers state them, and a qualified person decide. "
-    "Guards closed, eye protection on, work and tool clamped before the spindle turns."
+    "Advice, not an order: local codes, the limits of the machine and of the tool as their makers state "
+    "them, and a qualified person decide. Guards closed, eye protection on, work and tool clamped before "
+    "the spindle turns."
 )
 
 
-def render(answer: Answer, form: Form, *, full: bool = False, width: int = 80, colour: bool = False, more: Iterable[Section] = ()) -> str:
+def render(
+    answer: Answer,
+    form: Form,
+    *,
+    full: bool = False,
+    width: int = 80,
+    colour: bool = False,
+    more: Iterable[Section] = (),
+) -> str:
     """Return the answer in one of the forms; the same answer gives the same text.
 
     `full`, `width` and `colour` are for the terminal; `more` adds sections, each behind the one it names.
@@ -52,19 +67,33 @@ def make_page(answer: Answer, more: Iterable[Section] = ()) -> Page:
     """Return the report as titled sections of plain blocks, which every printed form shares."""
     from millreason.report.argument import argument_sections
     from millreason.report.buying import buying_section
-    from millreason.report.sheet import opening_sections
+    from millreason.report.opening import opening_sections
 
     bought = buying_section(answer) if answer.verdict in ("recommend", "recommend_with_warnings") else None
-    sections = insert_sections([*opening_sections(answer), *argument_sections(answer)], [*more, *([bought] if bought else [])])
+    sections = insert_sections(
+        [*opening_sections(answer), *argument_sections(answer)], [*more, *([bought] if bought else [])]
+    )
     return Page(
-        clean(answer.job), clean(answer.file), answer.verdict, VERDICTS[answer.verdict], _TONES[answer.verdict], clean(answer.summary), sections, footer(answer),
-    )  # fmt: skip
+        clean(answer.job),
+        clean(answer.file),
+        answer.verdict,
+        VERDICTS[answer.verdict],
+        _TONES[answer.verdict],
+        clean(answer.summary),
+        sections,
+        footer(answer),
+    )
 
 
 def footer(answer: Answer) -> tuple[str, ...]:
     """Return who made the answer from what, and who decides."""
-    counts = ", ".join(f"{number} {kind.replace('_', ' ')}" for kind, number in sorted(answer.provenance.items()))
-    made = f"millreason {answer.version}, engine {answer.engine}, rules and knowledge {answer.knowledge_hash[:16]}, from {clean(answer.file)}"
+    counts = ", ".join(
+        f"{number} {kind.replace('_', ' ')}" for kind, number in sorted(answer.provenance.items())
+    )
+    made = (
+        f"millreason {answer.version}, engine {answer.engine}, "
+        f"rules and knowledge {answer.knowledge_hash[:16]}, from {clean(answer.file)}"
+    )
     return (*((f"What the statements rest on: {counts}.",) if counts else ()), made, DEFERENCE)
 
 
@@ -76,7 +105,12 @@ def _template(form: str) -> Template:
 
     folder = Path(__file__).resolve().parent.parent / "templates"
     environment = Environment(
-        loader=FileSystemLoader(folder), undefined=StrictUndefined, autoescape=form == "html", trim_blocks=True, lstrip_blocks=True, keep_trailing_newline=True
+        loader=FileSystemLoader(folder),
+        undefined=StrictUndefined,
+        autoescape=form == "html",
+        trim_blocks=True,
+        lstrip_blocks=True,
+        keep_trailing_newline=True,
     )
     environment.filters["md"] = escape_markdown
     name = {"html": "report.html.jinja", "markdown": "report.md.jinja"}[form]

@@ -1,106 +1,141 @@
-"""The argument behind an answer: why it won, why others lost, margins, assumptions, rules, numbers and sources."""
+"""The argument: why the answer won, why others lost, margins, assumptions, questions and cautions."""
 
 from __future__ import annotations
 
-from collections import defaultdict
-from collections.abc import Iterable
+from collections.abc import Sequence
 
-from millreason import drawings
-from millreason.report.page import Block, Fields, Fold, Item, Items, Picture, Say, Section, Table, present
-from millreason.report.sheet import TONES, by_severity, limits_table, questions
+from millreason import charts
+from millreason.report.opening import questions
+from millreason.report.page import (
+    Fields,
+    Fold,
+    Gallery,
+    Item,
+    Items,
+    Picture,
+    Say,
+    Section,
+    Table,
+    present,
+    section,
+)
+from millreason.report.record import record_sections
+from millreason.report.sheet import TONES, Line, by_severity, steps_table
 from millreason.report.words import (
     basis_text,
     clean,
     count,
-    fact_value,
+    fact,
     fact_words,
+    limit_number,
+    number_words,
     option,
-    origin_text,
     pick_name,
+    pick_option,
+    recommends,
     value_text,
 )
-from millreason.trace import (
-    Answer,
-    BasisRecord,
-    CandidateRecord,
-    Evidence,
-    FactRecord,
-    FiringRecord,
-    Ledger,
-    OptionLedger,
-)
+from millreason.trace import Answer, CandidateRecord, Evidence, FactRecord, Ledger, OptionLedger
 from millreason.units import show
 
-_STANCE = {"for": "+", "against": "-", "rule_out": "ruled out"}
-_STAGES = {
-    "assume": "Filling gaps",
-    "appraise": "Judging the job",
-    "weigh": "Weighing the options",
-    "judge": "Judging the computed plan",
-    "caution": "Cautions",
-}
+_ASSUMED = (
+    "Assumed because the job does not say. To change one, write it in the job file under the name given, "
+    "and run it again."
+)
+
+_LINES: tuple[Line, ...] = (
+    ("feed per revolution fn", "mm", lambda step: step.feed_per_rev_mm),
+    ("largest chip thickness hex", "mm", lambda step: step.hex_mm),
+    ("mean chip thickness hm", "mm", lambda step: step.mean_chip_mm),
+    ("removal rate Q", "cm3/min", lambda step: step.removal_rate_cm3_min),
+    ("specific cutting force kc", "N/mm2", lambda step: step.specific_force_n_mm2),
+    ("net power, sharp edges", "kW", lambda step: step.net_power_kw),
+    ("net power, worn edges", "kW", lambda step: step.net_power_worn_kw),
+    ("net power the spindle has", "kW", lambda step: step.available_power_kw),
+    ("torque, mean", "N.m", lambda step: step.torque_nm),
+    ("torque, peak", "N.m", lambda step: step.peak_torque_nm),
+    ("tangential force, peak", "N", lambda step: step.tangential_force_n),
+    ("radial force", "N", lambda step: step.radial_force_n),
+    ("axial force", "N", lambda step: step.axial_force_n),
+    ("travel of each pass", "mm", lambda step: step.travel_mm),
+)
 
 
 def argument_sections(answer: Answer) -> list[Section]:
     """Return everything that follows the opening, in the order of a report; empty parts are left out."""
+    asked = questions(answer, "Worth asking") if answer.questions and answer.verdict != "ask" else None
     made = [
-        _why(answer), _lost(answer), _margins(answer), _assumptions(answer),
-        _open_questions(answer), _cautions(answer), _facts(answer, "given"), _rules(answer), _looked_up(answer), _calculations(answer),
-        _sources(answer),
-    ]  # fmt: skip
-    return [section for section in made if section is not None]
-
-
-def _section(key: str, title: str, blocks: tuple[Block, ...], brief: tuple[Block, ...] | None = None) -> Section | None:
-    return Section(key, title, blocks, brief) if blocks else None
+        _why(answer),
+        _lost(answer),
+        _margins(answer),
+        _numbers(answer),
+        _assumptions(answer),
+        _notes(answer),
+        asked,
+        _cautions(answer),
+        *record_sections(answer),
+    ]
+    return [part for part in made if part is not None]
 
 
 # ---------------------------------------------------------------------- why it won
 def _why(answer: Answer) -> Section | None:
-    ledgers = [ledger for ledger in answer.trace.ledgers if any(option.evidence for option in ledger.options)]
-    if answer.picks is None or answer.verdict in ("ask", "refuse", "conditional"):
+    if not recommends(answer):
         return None
-    chosen = [item for ledger in ledgers if (item := _chosen(ledger)) is not None]
-    folds = tuple(Fold(f"Ledger: {pick_name(ledger.pick)}", (_ledger_table(ledger),)) for ledger in ledgers)
+    spoken = [ledger for ledger in answer.trace.ledgers if any(entry.evidence for entry in ledger.options)]
+    told = [pair for ledger in spoken if (pair := _chosen(ledger, answer.units)) is not None]
     robust = Say(clean(answer.robustness)) if answer.robustness else None
-    blocks = (*present(Items(tuple(item for item, _ in chosen)), robust), *folds)
-    return _section("why", "Why this one", blocks, present(Items(tuple(short for _, short in chosen)), robust))
+    folds = [Fold(f"Ledger: {pick_name(ledger.pick)}", (_ledger(ledger, answer.units),)) for ledger in spoken]
+    blocks = present(Items(tuple(full for full, _ in told)), robust, *folds)
+    brief = present(Items(tuple(short for _, short in told)), robust)
+    return section("why", "Why this one", blocks, brief)
 
 
-def _chosen(ledger: Ledger) -> tuple[Item, Item] | None:
+def _chosen(ledger: Ledger, units: str) -> tuple[Item, Item] | None:
     """Return the chosen option with its reasons, in full and in one line."""
     best = next((entry for entry in ledger.options if entry.option == ledger.chosen), None)
     if best is None:
         return None
-    name = f"{pick_name(ledger.pick)}: {option(best.option)}"
-    for_it = sorted((e for e in best.evidence if e.stance == "for"), key=lambda entry: -entry.weight)
+    name = f"{pick_name(ledger.pick)}: {pick_option(ledger.pick, best.option, units)}"
+    spoken_for = sorted((e for e in best.evidence if e.stance == "for"), key=lambda entry: -entry.weight)
     against = [entry for entry in best.evidence if entry.stance != "for"]
-    details = [_evidence(entry) for entry in (*for_it, *against)]
-    details += [f"next: {_standing(entry)}" for entry in ledger.options if entry is not best][:1]
-    reason = f" - {clean(for_it[0].why)} [{for_it[0].rule}]" if for_it else ""
+    details = [_evidence(entry) for entry in (*spoken_for, *against)]
+    next_best = next((entry for entry in ledger.options if entry is not best), None)
+    if next_best is not None:
+        details.append(f"next: {_standing(ledger.pick, next_best, units)}")
+    reason = f" - {clean(spoken_for[0].why)} [{spoken_for[0].rule}]" if spoken_for else ""
     return Item(name, tuple(details), f"{best.balance:+g}"), Item(f"{name}{reason}")
 
 
 def _evidence(entry: Evidence) -> str:
-    weight = f"{_STANCE[entry.stance]}{count(abs(entry.weight))} {entry.strength}" if entry.stance != "rule_out" else "ruled out"
-    return f"{weight}: {clean(entry.why)} [{clean(entry.rule)}]"
+    if entry.stance == "rule_out":
+        return f"ruled out: {clean(entry.why)} [{clean(entry.rule)}]"
+    sign = "+" if entry.stance == "for" else "-"
+    return f"{sign}{count(abs(entry.weight))} {entry.strength}: {clean(entry.why)} [{clean(entry.rule)}]"
 
 
-def _standing(entry: OptionLedger) -> str:
-    return f"{option(entry.option)}, {'ruled out' if entry.ruled_out else f'{entry.balance:+g}'}"
+def _standing(pick: str, entry: OptionLedger, units: str) -> str:
+    balance = "ruled out" if entry.ruled_out else f"{entry.balance:+g}"
+    return f"{pick_option(pick, entry.option, units)}, {balance}"
 
 
-def _ledger_table(ledger: Ledger) -> Table:
-    rows = [_ledger_row(entry, entry.option == ledger.chosen) for entry in ledger.options]
-    return Table(("option", "balance", "for", "against", "ruled out by"), tuple(rows), frozenset({1}))
+def _ledger(ledger: Ledger, units: str) -> Table:
+    rows = tuple(_ledger_row(ledger, entry, units) for entry in ledger.options)
+    return Table(("option", "balance", "for", "against", "ruled out by"), rows, frozenset({1}))
 
 
-def _ledger_row(entry: OptionLedger, chosen: bool) -> tuple[str, ...]:
-    def said(stance: str) -> str:
-        return "; ".join(f"{clean(e.why)} [{clean(e.rule)}, {e.strength}]" if stance != "rule_out" else f"{clean(e.why)} [{clean(e.rule)}]" for e in entry.evidence if e.stance == stance)
+def _ledger_row(ledger: Ledger, entry: OptionLedger, units: str) -> tuple[str, ...]:
+    mark = " (chosen)" if entry.option == ledger.chosen else ""
+    said = (_said(entry, stance) for stance in ("for", "against", "rule_out"))
+    return f"{pick_option(ledger.pick, entry.option, units)}{mark}", f"{entry.balance:+g}", *said
 
-    name = f"{option(entry.option)} (chosen)" if chosen else option(entry.option)
-    return name, f"{entry.balance:+g}", said("for"), said("against"), said("rule_out")
+
+def _said(entry: OptionLedger, stance: str) -> str:
+    words = (word for word in entry.evidence if word.stance == stance)
+    strength = "" if stance == "rule_out" else ", {}"
+    return "; ".join(
+        f"{clean(word.why)} [{clean(word.rule)}{strength.format(word.strength)}]" for word in words
+    )
 
 
 # ---------------------------------------------------------------------- why the others lost
@@ -110,28 +145,41 @@ def _lost(answer: Answer) -> Section | None:
     runners = answer.runners_up or [candidate for candidate in tried if candidate.outcome == "stands"]
     if not runners and not rejected:
         return None
-    told = Say(f"{len(tried)} complete tools were planned and judged, best first, out of {answer.trace.candidates_possible} possible.")
+    told = Say(
+        f"{answer.trace.candidates_possible} complete tools came up, best first; "
+        f"{len(tried)} of those that were planned and judged are kept here."
+    )
     second = Items(tuple(_runner(candidate, answer.units) for candidate in runners), title="Runners-up")
-    fallen = tuple(_rejected(candidate, answer.units) for candidate in rejected)
-    table = Table(("tool", "standing", "rejected for", "value", "limit", "rule"), tuple(row for rows in fallen for row in rows), frozenset({1, 3, 4}))
-    fold = (Fold(f"Rejected: {len(rejected)}", (table,)),) if rejected else ()
-    return _section("lost", "Why the others lost", (*present(told, second), *fold))
+    blocks = present(told, second, _rejected(rejected, answer.units) if rejected else None)
+    return section("lost", "Why the others lost", blocks)
 
 
 def _runner(candidate: CandidateRecord, units: str) -> Item:
-    numbers = ", ".join(f"{option(name)} {value_text(value, '', units)}" for name, value in candidate.key_numbers.items())
-    details = [clean(reason) for reason in candidate.reasons] + ([numbers] if numbers else [])
-    return Item(clean(candidate.label), tuple(details), f"{candidate.standing:+g}")
+    numbers = ", ".join(number_words(name, value, units) for name, value in candidate.key_numbers.items())
+    details = (*(clean(reason) for reason in candidate.reasons), *([numbers] if numbers else []))
+    return Item(clean(candidate.label), details, f"{candidate.standing:+g}")
 
 
-def _rejected(candidate: CandidateRecord, units: str) -> list[tuple[str, ...]]:
+def _rejected(candidates: Sequence[CandidateRecord], units: str) -> Fold:
+    rows = tuple(row for candidate in candidates for row in _rejected_rows(candidate, units))
+    head = ("tool", "standing", "rejected because", "value", "limit", "rule")
+    return Fold(f"Rejected: {len(candidates)}", (Table(head, rows, frozenset({1, 3, 4})),))
+
+
+def _rejected_rows(candidate: CandidateRecord, units: str) -> list[tuple[str, ...]]:
     first = (clean(candidate.label), f"{candidate.standing:+g}")
     if not candidate.limits:
         return [(*first, "; ".join(clean(reason) for reason in candidate.reasons), "", "", "")]
     return [
-        (*(first if place == 0 else ("", "")), clean(limit.text) or option(limit.key), value_text(limit.value, "", units), value_text(limit.limit, "", units), clean(limit.rule))
+        (
+            *(first if place == 0 else ("", "")),
+            clean(limit.text) or option(limit.key),
+            limit_number(limit.value, units),
+            limit_number(limit.limit, units),
+            clean(limit.rule),
+        )
         for place, limit in enumerate(candidate.limits)
-    ]  # fmt: skip
+    ]
 
 
 # ---------------------------------------------------------------------- margins
@@ -139,130 +187,94 @@ def _margins(answer: Answer) -> Section | None:
     if not answer.checks:
         return None
     rows = tuple(
-        (clean(check.name), show(check.value, check.unit, answer.units), show(check.limit, check.unit, answer.units), f"{check.use_percent:.0f} %", check.verdict, clean(check.by))
+        (
+            clean(check.name),
+            show(check.value, check.unit, answer.units),
+            show(check.limit, check.unit, answer.units),
+            f"{check.use_percent:.0f} %",
+            check.verdict,
+            clean(check.by),
+        )
         for check in answer.checks
-    )  # fmt: skip
-    bars = drawings.margin_bars([drawings.Bar(clean(c.name), c.use_percent, c.verdict) for c in answer.checks])
+    )
     table = Table(("check", "value", "limit", "use", "verdict", "by"), rows, frozenset({1, 2, 3}))
-    sources = tuple(Item(clean(c.name), (basis_text(c.basis),)) for c in answer.checks if c.basis)
-    fold = (Fold("What the limits rest on", (Items(sources),)),) if sources else ()
-    return _section("margins", "Margins", (*present(table, Picture(bars, "Use of each limit; the line is 100 %")), *fold))
+    bars = [charts.Bar(clean(check.name), check.use_percent, check.verdict) for check in answer.checks]
+    drawn = Picture(charts.margin_bars(bars), "Use of each limit; the line is 100 %")
+    rests = tuple(Item(clean(c.name), (basis_text(c.basis),)) for c in answer.checks if c.basis)
+    fold = Fold("What the limits rest on", (Items(rests),)) if rests else None
+    return section("margins", "Margins", present(table, Gallery((drawn, *_drive(answer))), fold))
 
 
-# ---------------------------------------------------------------------- assumptions, questions, cautions
+def _numbers(answer: Answer) -> Section | None:
+    if answer.plan is None or not recommends(answer):
+        return None
+    other = [
+        (option(step.name), show(step.unit_power_kw, "kW", answer.units))
+        for step in answer.plan.steps
+        if step.unit_power_kw is not None
+    ]
+    told = Fields(tuple(other), "Net power by the unit-power method, an independent check") if other else None
+    return section(
+        "plan", "The cut in numbers", present(steps_table(answer.plan.steps, _LINES, answer.units), told)
+    )
+
+
+def _drive(answer: Answer) -> list[Picture]:
+    """Draw the spindle's curve where the trace holds it as points of speed and net power."""
+    curve, steps = fact(answer, "machine.net_curve"), answer.plan.steps if answer.plan else []
+    if curve is None or not isinstance(curve.value, list) or not steps:
+        return []
+    pairs = [point for point in curve.value if isinstance(point, list) and len(point) == 2]
+    if not pairs:
+        return []
+    step = max(steps, key=lambda entry: entry.net_power_worn_kw / entry.available_power_kw)
+    work = charts.WorkingPoint(step.spindle_speed_rpm, step.net_power_kw, step.net_power_worn_kw)
+    drawn = charts.drive_curve([(float(speed), float(power)) for speed, power in pairs], work)
+    return [Picture(drawn, f"Power and torque at the cutter; the dots are the {option(step.name)}")]
+
+
+# ---------------------------------------------------------------------- assumptions and cautions
 def _assumptions(answer: Answer) -> Section | None:
+    if not answer.assumptions:
+        return None
     entries = tuple(_assumption(record, answer) for record in answer.assumptions)
-    short = tuple(Item(f"{entry.text} - {entry.details[0]}" if entry.details else entry.text) for entry in entries)
-    how = Say("Assumed because the job does not say. To change one, write it in the job file under the name given and run it again.")
-    return _section("assumptions", "Assumptions", (how, Items(entries)) if entries else (), (Items(short),))
+    short = tuple(
+        Item(f"{entry.text} - {entry.details[0]}" if entry.details else entry.text) for entry in entries
+    )
+    return section("assumptions", "Assumptions", (Say(_ASSUMED), Items(entries)), (Items(short),))
 
 
 def _assumption(record: FactRecord, answer: Answer) -> Item:
     firing = next((firing for firing in answer.trace.firings if firing.rule == record.by), None)
     why = clean(record.text) or (clean(firing.why) if firing else "")
     rests = basis_text(record.basis or (firing.basis if firing else None))
-    details = [f"{why} [{clean(record.by)}]" if record.by else why, rests, f"In the job file: {clean(record.name)}"]
-    return Item(f"{fact_words(record.name)} {value_text(record.value, record.unit, answer.units)}", tuple(line for line in details if line))
+    details = [
+        f"{why} [{clean(record.by)}]" if record.by else why,
+        rests,
+        f"In the job file: {clean(record.name)}",
+    ]
+    shown = f"{fact_words(record.name)} {value_text(record.value, record.unit, answer.units)}"
+    return Item(shown, tuple(detail for detail in details if detail))
 
 
-def _open_questions(answer: Answer) -> Section | None:
-    if answer.verdict == "ask" or not answer.questions:
+def _notes(answer: Answer) -> Section | None:
+    if not answer.notes:
         return None
-    return questions(answer, "Worth asking")
+    blocks = (Items(tuple(Item(clean(text)) for text in answer.notes)),)
+    return section("notes", "Remarks", blocks, blocks)
 
 
 def _cautions(answer: Answer) -> Section | None:
+    if not answer.cautions:
+        return None
     entries = tuple(
-        Item(clean(caution.text), (f"Do: {clean(caution.do)}", f"{clean(', '.join(caution.rules))}; {basis_text(caution.basis)}"), caution.severity, TONES[caution.severity])
+        Item(
+            clean(caution.text),
+            (f"Do: {clean(caution.do)}", f"{clean(', '.join(caution.rules))}; {basis_text(caution.basis)}"),
+            caution.severity,
+            TONES[caution.severity],
+        )
         for caution in by_severity(answer.cautions)
-    )  # fmt: skip
-    brief = (Items(entries),) if answer.picks is None else None
-    return _section("cautions", "Cautions", (Items(entries),) if entries else (), brief)
-
-
-# ---------------------------------------------------------------------- facts and numbers
-def _facts(answer: Answer, origin: str) -> Section | None:
-    rows = tuple((fact_words(record.name), fact_value(record, answer.units)) for record in answer.trace.facts if record.origin == origin)
-    blocks = present(Fields(rows))
-    brief = blocks if answer.verdict in ("ask", "refuse", "conditional") else None
-    return _section("given", "What was given", blocks, brief)
-
-
-def _looked_up(answer: Answer) -> Section | None:
-    rows = tuple(
-        (fact_words(record.name), value_text(record.value, record.unit, answer.units), clean(record.by), basis_text(record.basis))
-        for record in answer.trace.facts
-        if record.origin == "looked_up"
     )
-    found = _section("looked-up", "Numbers looked up", present(Table(("fact", "value", "from", "source"), rows, frozenset({1}))))
-    return found
-
-
-def _calculations(answer: Answer) -> Section | None:
-    rows = tuple(
-        (fact_words(calculation.result_of), value_text(calculation.value, calculation.unit, answer.units), clean(calculation.formula), _inputs(calculation.inputs), clean(", ".join(calculation.references)))
-        for calculation in answer.trace.calculations
-    )  # fmt: skip
-    table = Table(("result", "value", "formula", "inputs", "references"), rows, frozenset({1}))
-    return _section("calculations", "Calculations", (Fold(f"{len(rows)} calculations", (table,)),) if rows else ())
-
-
-def _inputs(inputs: dict[str, object]) -> str:
-    return ", ".join(f"{clean(name)} = {_number(value)}" for name, value in inputs.items())
-
-
-def _number(value: object) -> str:
-    return f"{value:.6g}" if isinstance(value, float) else clean(value)
-
-
-# ---------------------------------------------------------------------- rules
-def _rules(answer: Answer) -> Section | None:
-    stages: dict[str, list[FiringRecord]] = defaultdict(list)
-    for firing in answer.trace.firings:
-        stages[firing.stage].append(firing)
-    order = [*_STAGES, *(stage for stage in stages if stage not in _STAGES)]
-    folds = tuple(_stage_fold(stage, stages[stage], answer.units) for stage in order if stages.get(stage))
-    told = Say(f"{len(answer.trace.firings)} firings. Each line gives the rule, what it says, the facts it fired on with where they came from, what it concluded and what it rests on.")
-    return _section("rules", "Every rule that fired", (told, *folds) if folds else ())
-
-
-def _stage_fold(stage: str, firings: list[FiringRecord], units: str) -> Fold:
-    entries = tuple(_firing(firing, units) for firing in firings)
-    return Fold(f"{_STAGES.get(stage, option(stage))}: {len(firings)}", (Items(entries),))
-
-
-def _firing(firing: FiringRecord, units: str) -> Item:
-    facts = "; ".join(f"{clean(c.test)} [{origin_text(c.origin)}{_held(c.test, c.value, units)}]" for c in firing.conditions)
-    about = f" ({clean(firing.about)})" if firing.about else ""
-    shop = ", the shop's own rule" if firing.from_shop else ""
-    details = (f"Facts: {facts}", f"Concluded: {clean(firing.conclusion)}{about}", f"Why: {clean(firing.why)}", f"Rests on: {basis_text(firing.basis)}{shop}")
-    return Item(clean(firing.says), details, clean(firing.rule))
-
-
-def _held(test: str, value: object, units: str) -> str:
-    shown = value_text(value, "", units) if value is None or isinstance(value, str | float | int | bool | list) else clean(value)
-    return "" if value is None or test.endswith(f" is {shown}") else f": {shown}"
-
-
-# ---------------------------------------------------------------------- sources
-def _sources(answer: Answer) -> Section | None:
-    places: dict[str, set[str]] = defaultdict(set)
-    for basis in _bases(answer):
-        if basis is not None and basis.source:
-            how = " (recalled)" if basis.kind == "recalled" else ""
-            places[clean(basis.source)].add(f"{clean(basis.where)}{how}" if basis.where else how.strip(" ()") or "used")
-    for calculation in answer.trace.calculations:
-        for reference in calculation.references:
-            places[clean(reference)].add(clean(calculation.formula))
-    rows = tuple((name, "; ".join(sorted(used))) for name, used in sorted(places.items()))
-    return _section("sources", "Sources", present(Table(("source", "where in it, or used by"), rows)))
-
-
-def _bases(answer: Answer) -> Iterable[BasisRecord | None]:
-    yield from (firing.basis for firing in answer.trace.firings)
-    yield from (record.basis for record in answer.trace.facts)
-    yield from (check.basis for check in answer.checks)
-    yield from (caution.basis for caution in answer.cautions)
-
-
-__all__ = ["argument_sections", "limits_table"]
+    brief = None if recommends(answer) else (Items(entries),)
+    return section("cautions", "Cautions", (Items(entries),), brief)

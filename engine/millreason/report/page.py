@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator
+from collections.abc import Iterable
 from dataclasses import dataclass
 from typing import ClassVar, Literal
 
@@ -77,6 +77,23 @@ class Picture:
 
 
 @dataclass(frozen=True)
+class Gallery:
+    """Drawings that belong together; the first is the largest."""
+
+    kind: ClassVar[str] = "gallery"
+    pictures: tuple[Picture, ...]
+
+
+@dataclass(frozen=True)
+class Pair:
+    """Two groups of blocks that stand side by side where there is room."""
+
+    kind: ClassVar[str] = "pair"
+    left: tuple[Block, ...]
+    right: tuple[Block, ...]
+
+
+@dataclass(frozen=True)
 class Fold:
     """Detail that a reader opens on demand; on paper it is always open."""
 
@@ -85,7 +102,7 @@ class Fold:
     blocks: tuple[Block, ...]
 
 
-Block = Fields | Table | Items | Box | Say | Picture | Fold
+Block = Fields | Table | Items | Box | Say | Picture | Gallery | Pair | Fold
 
 
 @dataclass(frozen=True)
@@ -117,14 +134,22 @@ class Page:
     footer: tuple[str, ...]
 
 
+def section(
+    key: str, title: str, blocks: tuple[Block, ...], brief: tuple[Block, ...] | None = None
+) -> Section | None:
+    """Return a section, or None where it would be empty."""
+    return Section(key, title, blocks, brief) if blocks else None
+
+
 def insert_sections(sections: Iterable[Section], more: Iterable[Section]) -> tuple[Section, ...]:
-    """Put each added section behind the one it names, in the order given; at the end where that one is missing."""
+    """Put each added section behind the one it names, in the order given; else at the end."""
     added = list(more)
     result: list[Section] = []
     for section in sections:
         result.append(section)
         result.extend(extra for extra in added if extra.after == section.key)
-    return (*result, *(extra for extra in added if extra not in result))
+    strays = [extra for extra in added if extra not in result]
+    return (*result, *strays)
 
 
 def present(*blocks: Block | None) -> tuple[Block, ...]:
@@ -136,8 +161,3 @@ def _empty(block: Block) -> bool:
     if isinstance(block, Fields | Table):
         return not block.rows
     return isinstance(block, Items) and not block.entries
-
-
-def pictures(blocks: Iterable[Block]) -> Iterator[Picture]:
-    """Yield the drawings among blocks."""
-    return (block for block in blocks if isinstance(block, Picture))

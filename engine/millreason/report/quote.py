@@ -1,4 +1,4 @@
-"""The quote block: one answer as short `key: value` lines that an estimator's sheet or script can read (it is YAML)."""
+"""The quote block: an answer as short `key: value` lines of YAML for an estimator's sheet or script."""
 
 from __future__ import annotations
 
@@ -25,12 +25,16 @@ def quote(answer: Answer) -> str:
 
 def flags(answer: Answer) -> list[str]:
     """Return what an estimator must not overlook, one word group each."""
-    first = {"ask": ["ask"], "refuse": ["refuse"], "conditional": ["conditional on safety"]}.get(answer.verdict, [])
+    first = {"ask": ["ask"], "refuse": ["refuse"], "conditional": ["conditional on safety"]}.get(
+        answer.verdict, []
+    )
     asked = [f"ask {question.fact}" for question in answer.questions if question.need == "must"]
     held = [f"confirm {question.fact}" for question in answer.conditions]
     limits = [f"limit {limit.key}" for limit in answer.refusal.limits] if answer.refusal else []
     over = [f"{check.verdict} {check.key}" for check in answer.checks if check.verdict != "ok"]
-    warned = [f"{caution.severity} {caution.key}" for caution in answer.cautions if caution.severity != "note"]
+    warned = [
+        f"{caution.severity} {caution.key}" for caution in answer.cautions if caution.severity != "note"
+    ]
     doubt = ["contradiction"] if answer.contradictions else []
     return list(dict.fromkeys([*first, *doubt, *asked, *held, *limits, *over, *warned]))
 
@@ -38,7 +42,8 @@ def flags(answer: Answer) -> list[str]:
 def _tool(picks: Picks) -> str:
     own = f", own cutter {clean(picks.own_cutter)}" if picks.own_cutter else ""
     lead = lead_text(picks.lead_deg, picks.kappa_deg, picks.kappa_note)
-    return f"{option(picks.cutter_class)} D {picks.diameter_mm:g} mm z {picks.teeth} {option(picks.hand)} hand, {lead}{own}"
+    body = f"{option(picks.cutter_class)} D {picks.diameter_mm:g} mm z {picks.teeth}"
+    return f"{body} {option(picks.hand)} hand, {lead}{own}"
 
 
 def _times(answer: Answer, plan: PlanRecord) -> dict[str, Value]:
@@ -53,7 +58,11 @@ def _times(answer: Answer, plan: PlanRecord) -> dict[str, Value]:
         "feed_min": _round(plan.feed_time_min),
         "extra_pass_min": _round(plan.time_min - plan.feed_time_min),
         "repositions": max(plan.radial_passes * plan.axial_passes - 1, 0),
-        "time_min_low_likely_high": [_round(plan.time_low_min), _round(plan.time_min), _round(plan.time_high_min)],
+        "time_min_low_likely_high": [
+            _round(plan.time_low_min),
+            _round(plan.time_min),
+            _round(plan.time_high_min),
+        ],
         "parts_per_edge_set": _round(plan.parts_per_edge_set),
         "edge_sets_for_batch": _round(plan.edge_sets_for_batch),
     }

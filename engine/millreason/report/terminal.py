@@ -14,9 +14,30 @@ from rich.table import Column
 from rich.table import Table as Grid
 from rich.text import Text
 
-from millreason.report.page import Block, Box, Fields, Fold, Item, Items, Page, Picture, Say, Section, Table
+from millreason.report.page import (
+    Block,
+    Box,
+    Fields,
+    Fold,
+    Gallery,
+    Item,
+    Items,
+    Page,
+    Pair,
+    Picture,
+    Say,
+    Section,
+    Table,
+)
 
-_STYLES = {"good": "green", "note": "cyan", "caution": "yellow", "warning": "bold red", "stop": "bold red", "plain": ""}
+_STYLES = {
+    "good": "green",
+    "note": "cyan",
+    "caution": "yellow",
+    "warning": "bold red",
+    "stop": "bold red",
+    "plain": "",
+}
 _SIDE_BY_SIDE = 108
 
 
@@ -24,9 +45,17 @@ def terminal(page: Page, full: bool, width: int, colour: bool) -> str:
     """Return the page as text of a given width; the short form holds what is needed at the machine."""
     target = io.StringIO()
     console = Console(
-        file=target, width=width, force_terminal=colour, no_color=not colour, color_system="standard" if colour else None,
-        markup=False, emoji=False, highlight=False, legacy_windows=False, _environ={},
-    )  # fmt: skip
+        file=target,
+        width=width,
+        force_terminal=colour,
+        no_color=not colour,
+        color_system="standard" if colour else None,
+        markup=False,
+        emoji=False,
+        highlight=False,
+        legacy_windows=False,
+        _environ={},
+    )
     for part in _parts(page, full, width):
         console.print(part)
     return "\n".join(line.rstrip() for line in target.getvalue().splitlines()) + "\n"
@@ -35,7 +64,9 @@ def terminal(page: Page, full: bool, width: int, colour: bool) -> str:
 def _parts(page: Page, full: bool, width: int) -> Iterator[RenderableType]:
     yield Rule(style="dim")
     yield Text(page.title, style="bold")
-    yield Text.assemble((page.verdict_text, _STYLES[page.tone] or "bold"), f": {page.summary}" if page.summary else "")
+    yield Text.assemble(
+        (page.verdict_text, _STYLES[page.tone] or "bold"), f": {page.summary}" if page.summary else ""
+    )
     for section in page.sections:
         blocks = section.blocks if full else section.brief
         if blocks:
@@ -50,7 +81,7 @@ def _parts(page: Page, full: bool, width: int) -> Iterator[RenderableType]:
 def _section(section: Section, blocks: Sequence[Block], width: int) -> Iterator[RenderableType]:
     yield Text("")
     yield Text(section.title.upper(), style="bold underline")
-    kept = [block for block in blocks if not isinstance(block, Picture)]
+    kept = [block for block in _unpaired(blocks) if not isinstance(block, Picture | Gallery)]
     while kept:
         first = kept.pop(0)
         if width >= _SIDE_BY_SIDE and isinstance(first, Fields) and kept and isinstance(kept[0], Fields):
@@ -60,6 +91,11 @@ def _section(section: Section, blocks: Sequence[Block], width: int) -> Iterator[
             yield pair
         else:
             yield block_text(first)
+
+
+def _unpaired(blocks: Sequence[Block]) -> Iterator[Block]:
+    for block in blocks:
+        yield from (*block.left, *block.right) if isinstance(block, Pair) else (block,)
 
 
 def block_text(block: Block) -> RenderableType:
@@ -72,9 +108,18 @@ def block_text(block: Block) -> RenderableType:
         return _titled(block.title, _items(block))
     if isinstance(block, Box):
         lines = Text("\n").join(Text(line) for line in block.lines)
-        return Panel(lines, title=Text(block.title), border_style=_STYLES[block.tone], box=box.SQUARE, title_align="left")
+        return Panel(
+            lines,
+            title=Text(block.title),
+            border_style=_STYLES[block.tone],
+            box=box.SQUARE,
+            title_align="left",
+        )
     if isinstance(block, Fold):
-        return Group(Text(block.title, style="bold"), Padding(Group(*(block_text(inner) for inner in block.blocks)), (0, 0, 0, 2)))
+        return Group(
+            Text(block.title, style="bold"),
+            Padding(Group(*(block_text(inner) for inner in block.blocks)), (0, 0, 0, 2)),
+        )
     return Text(block.text) if isinstance(block, Say) else Text("")
 
 

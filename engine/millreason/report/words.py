@@ -6,7 +6,7 @@ import re
 import unicodedata
 from collections.abc import Iterable
 
-from millreason.trace import Answer, BasisRecord, FactRecord, Origin, Plain
+from millreason.trace import Answer, BasisRecord, ConditionRecord, FactRecord, Origin, Picks, Plain
 from millreason.units import plain, show
 
 _OPTIONS = {
@@ -21,14 +21,33 @@ _OPTIONS = {
     "mql": "minimum-quantity lubrication",
 }
 _PICKS = {
-    "cutter_class": "cutter class", "diameter_mm": "diameter", "kappa_deg": "lead angle", "rake": "rake combination",
-    "corner": "insert corner", "edge": "cutting edge", "pockets": "insert pockets", "spacing": "tooth spacing",
-    "direction": "direction of cut", "fluid": "cutting fluid", "application": "ISO 513 band",
-}  # fmt: skip
+    "cutter_class": "cutter class",
+    "diameter_mm": "diameter",
+    "kappa_deg": "lead angle",
+    "rake": "rake combination",
+    "corner": "insert corner",
+    "edge": "cutting edge",
+    "pockets": "insert pockets",
+    "spacing": "tooth spacing",
+    "direction": "direction of cut",
+    "fluid": "cutting fluid",
+    "application": "ISO 513 band",
+}
+# The corners of the area on the insert that meets the work, as `formulas.first_contact` names them.
+_CONTACT = {
+    "S": "the nose",
+    "T": "the main edge at full depth",
+    "U": "the corner away from both edges",
+    "V": "the minor edge",
+}
 ORIGINS: dict[str, str] = {
-    "given": "given", "looked_up": "looked up", "computed": "computed", "assumed": "assumed", "concluded": "concluded",
+    "given": "given",
+    "looked_up": "looked up",
+    "computed": "computed",
+    "assumed": "assumed",
+    "concluded": "concluded",
     "absent": "not known",
-}  # fmt: skip
+}
 VERDICTS = {
     "recommend": "Recommended",
     "recommend_with_warnings": "Recommended, with warnings",
@@ -36,14 +55,37 @@ VERDICTS = {
     "ask": "Questions first",
     "refuse": "Not possible as described",
 }
-_SUFFIXES = ("_mm_min", "_m_min", "_n_mm2", "_n_um", "_mm2", "_cm3_min", "_mm_m", "_mm", "_um", "_kg", "_kw", "_nm", "_rpm", "_hb", "_hrc",
-             "_deg", "_min", "_n", "_per_h")  # fmt: skip
+# The unit that the end of a fact's name states, and how it is stored; longer ends come first.
+_ENDINGS = {
+    "_cm3_min": "cm3/min",
+    "_mm_min": "mm/min",
+    "_m_min": "m/min",
+    "_n_mm2": "N/mm2",
+    "_n_um": "N/um",
+    "_j_mm3": "J/mm3",
+    "_mm_m": "mm/m",
+    "_mm2": "mm2",
+    "_per_h": "/h",
+    "_hrc": "HRC",
+    "_rpm": "rpm",
+    "_deg": "deg",
+    "_min": "min",
+    "_mm": "mm",
+    "_um": "um",
+    "_kg": "kg",
+    "_kw": "kW",
+    "_nm": "N.m",
+    "_hb": "HB",
+    "_n": "N",
+}
 
 
 def clean(text: object) -> str:
-    """Return a text on one line, without control or direction characters that could disturb a page or a terminal."""
+    """Return a text on one line, without control or direction characters that could disturb a page."""
     kept = (" " if unicodedata.category(letter) in ("Cc", "Zl", "Zp") else letter for letter in str(text))
-    return " ".join("".join(letter for letter in kept if unicodedata.category(letter) not in ("Cf", "Cs")).split())
+    return " ".join(
+        "".join(letter for letter in kept if unicodedata.category(letter) not in ("Cf", "Cs")).split()
+    )
 
 
 def option(name: str) -> str:
@@ -58,14 +100,39 @@ def pick_name(pick: str) -> str:
     return _PICKS.get(pick, clean(pick).replace("_", " "))
 
 
+def _split_unit(name: str) -> tuple[str, str]:
+    """Return a fact's name without the unit at its end, and the unit."""
+    for ending, unit in _ENDINGS.items():
+        if name.endswith(ending) and name != ending:
+            return name.removesuffix(ending), unit
+    return name, ""
+
+
 def fact_words(name: str) -> str:
     """Return a fact's name as a label: 'machine.power_kw' is 'machine: power'."""
     group, _, rest = clean(name).partition(".")
-    for suffix in _SUFFIXES:
-        if rest.endswith(suffix) and rest != suffix:
-            rest = rest.removesuffix(suffix)
-            break
-    return f"{group}: {rest.replace('_', ' ')}" if rest else group
+    if not rest:
+        return _split_unit(group)[0].replace("_", " ")
+    return f"{group}: {_split_unit(rest)[0].replace('_', ' ')}"
+
+
+def number_words(name: str, value: float, system: str) -> str:
+    """Return a number with the name and unit that its fact name states: 'time 5.4 min'."""
+    words, unit = _split_unit(clean(name).removeprefix("plan."))
+    return f"{words.replace('_', ' ')} {show(value, unit, system)}"
+
+
+def pick_option(pick: str, name: str, system: str) -> str:
+    """Return one option of a pick in words, with its unit where it is a number."""
+    if pick == "corner":
+        return corner_text(name, system)
+    try:
+        number = float(name)
+    except ValueError:
+        return option(name)
+    if pick == "kappa_deg":
+        return "round insert" if number == 0 else lead_text(90 - number, number)
+    return show(number, "mm", system) if pick == "diameter_mm" else plain(number)
 
 
 def value_text(value: Plain, unit: str = "", system: str = "metric") -> str:
@@ -91,13 +158,18 @@ def fact_value(record: FactRecord, system: str) -> str:
     """Return the value of a fact, and in brackets how it was written where that says more."""
     shown = value_text(record.value, record.unit, system)
     written = clean(record.text)
-    if record.origin == "given" and written and written.replace("_", " ") not in shown and shown not in written:
+    if (
+        record.origin == "given"
+        and written
+        and written.replace("_", " ") not in shown
+        and shown not in written
+    ):
         return f"{shown} (written: {written})"
     return shown
 
 
 def lead_text(lead_deg: float | None, kappa_deg: float, note: str = "") -> str:
-    """Return the lead angle and the cutting-edge angle, always both, so that neither is taken for the other."""
+    """Return lead angle and cutting-edge angle, always both, so that neither is taken for the other."""
     if lead_deg is None:
         return clean(note) or "follows the depth (round insert)"
     both = f"lead {plain(lead_deg, 1)} deg (kappa {plain(kappa_deg, 1)} deg)"
@@ -115,7 +187,9 @@ def corner_text(corner: str, units: str) -> str:
     size = corner_size(corner)
     if size is not None:
         return f"corner radius {show(size, 'mm', units)}"
-    return {"facet": "corner facet with parallel land", "round": "round insert", "sharp": "sharp corner"}.get(corner, option(corner))
+    return {"facet": "corner facet with parallel land", "round": "round insert", "sharp": "sharp corner"}.get(
+        corner, option(corner)
+    )
 
 
 def origin_text(origin: Origin | str) -> str:
@@ -124,20 +198,57 @@ def origin_text(origin: Origin | str) -> str:
 
 
 def basis_text(basis: BasisRecord | None) -> str:
-    """Return what a statement rests on: the source and place, or 'common practice'; 'recalled' where it was not seen."""
+    """Return what a statement rests on: source and place, or 'common practice'; 'recalled' if not seen."""
     if basis is None:
         return ""
     place = ", ".join(clean(part) for part in (basis.source, basis.where) if part)
-    lead = {"checked": "", "recalled": "recalled: ", "common_practice": "common practice: ", "derived": "derived: ",
-            "invented": "invented: ", "shop": "the shop's own: "}.get(basis.kind, f"{clean(basis.kind)}: ")  # fmt: skip
+    lead = {
+        "checked": "",
+        "recalled": "recalled: ",
+        "common_practice": "common practice: ",
+        "derived": "derived: ",
+        "invented": "invented: ",
+        "shop": "the shop's own: ",
+    }.get(basis.kind, f"{clean(basis.kind)}: ")
     text = f"{lead}{place}" if place else lead.rstrip(": ")
     return f"{text} ({clean(basis.note)})" if basis.note else text
+
+
+def condition_text(condition: ConditionRecord, system: str) -> str:
+    """Return a condition of a rule with the value that met it and where that came from."""
+    test, origin = clean(condition.test), origin_text(condition.origin)
+    if condition.value is None:
+        return f"{test} [{origin}]" if origin not in test else test
+    unit = _split_unit(condition.fact)[1]
+    shown = value_text(condition.value, unit, system)
+    return f"{test} [{origin}]" if test.endswith(f" {shown}") else f"{test} [{origin}: {shown}]"
 
 
 def listing(items: Iterable[str], last: str = "and") -> str:
     """Join words as in a sentence."""
     words = list(items)
     return words[0] if len(words) == 1 else f"{', '.join(words[:-1])} {last} {words[-1]}" if words else ""
+
+
+def joined(*parts: str) -> str:
+    """Join the parts that are not empty with commas."""
+    return ", ".join(part for part in parts if part)
+
+
+def rake_text(picks: Picks) -> str:
+    """Return the rake combination with both angles: 'double negative: axial -5 deg, radial -7 deg'."""
+    angles = f"axial {picks.axial_rake_deg:+g} deg, radial {picks.radial_rake_deg:+g} deg"
+    return f"{option(picks.rake)}: {angles}"
+
+
+def limit_number(value: Plain, system: str) -> str:
+    """Return a value or a limit; what is not known leaves its cell empty."""
+    return "" if value is None else value_text(value, "", system)
+
+
+def recommends(answer: Answer) -> bool:
+    """Whether the answer gives a cutter with its data, so that there is a setup sheet."""
+    return answer.plan is not None and answer.verdict in ("recommend", "recommend_with_warnings")
 
 
 def fact(answer: Answer, name: str) -> FactRecord | None:
@@ -157,6 +268,18 @@ def fact_shown(answer: Answer, name: str) -> str:
     """Return a fact's value for a reader, or the empty string where it is not known."""
     record = fact(answer, name)
     return "" if record is None else value_text(record.value, record.unit, answer.units)
+
+
+def contact_text(points: str) -> str:
+    """Return where the insert meets the work first, in words."""
+    if not points or any(point not in _CONTACT for point in points):
+        return option(points)
+    return f"{listing(_CONTACT[point] for point in points)} ({points})"
+
+
+def length(value_mm: float, system: str) -> str:
+    """Return a computed length as finely as it can be set: to 0.1 mm from 10 mm up, else to 0.01 mm."""
+    return show(round(value_mm, 1 if abs(value_mm) >= 10 else 2), "mm", system)
 
 
 def count(number: float) -> str:
