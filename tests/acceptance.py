@@ -18,6 +18,7 @@ import yaml
 
 from acceptance_numbers import Facts, Note, consistency, machine_limits, short
 from acceptance_terms import PLAN_PICKS, all_hold, holds, sentences, view
+from millreason.errors import MillreasonError
 from millreason.yaml_source import read_yaml
 
 CASES = Path(__file__).resolve().parent.parent / "cases" / "accept"
@@ -240,6 +241,19 @@ def run_case(case: Case, solve: Callable[[Path], Answer] = answer_of) -> list[Sc
     return scores
 
 
+def rejected(case: Case, error: MillreasonError) -> Score:
+    """Return the score of a job file that the program would not read or could not answer."""
+    return Score(case["case"]["id"], case["case"]["title"], "error", (), (), (str(error),))
+
+
+def safely_run(case: Case) -> list[Score]:
+    """Run a case; an error of the program is a miss of that case and does not hide the others."""
+    try:
+        return run_case(case)
+    except MillreasonError as error:
+        return [rejected(case, error)]
+
+
 def table(scores: list[Score], verbose: bool = False) -> str:
     """Return the scores as lines: case, verdict, hits, remarks, misses, and what was missed."""
     lines = [f"{'case':<6}{'verdict':<26}{'hits':>5}{'remarks':>9}{'misses':>8}  title"]
@@ -261,7 +275,7 @@ def main(arguments: list[str] | None = None) -> int:
     parser.add_argument("ids", nargs="*", help="case ids or file names; all if none is given")
     parser.add_argument("-v", "--verbose", action="store_true", help="show hits and remarks too")
     options = parser.parse_args(arguments)
-    scores = [entry for case in load_cases(options.ids) for entry in run_case(case)]
+    scores = [entry for case in load_cases(options.ids) for entry in safely_run(case)]
     print(table(scores, options.verbose))
     return 0 if scores and all(entry.passed for entry in scores) else 1
 
