@@ -11,6 +11,9 @@ from millreason.errors import OutOfRangeError
 SMALLEST = 1e-12
 LARGEST = 1e12
 
+# A sum over the teeth stays short.
+MOST_TEETH = 10_000
+
 # Rounding in the last digits must not turn a width equal to the diameter into an error.
 ROUNDING = 1e-9
 
@@ -78,6 +81,11 @@ def count(quantity: str, value: float) -> int:
     if number < 1 or number != math.floor(number):
         raise OutOfRangeError(quantity, value, "a whole number of one or more")
     return int(number)
+
+
+def teeth(value: float) -> int:
+    """Return a number of teeth, small enough for a sum over them."""
+    return int(between("number of teeth", count("number of teeth", value), 1, MOST_TEETH))
 
 
 def cutting_edge_angle(value: float) -> float:

@@ -222,7 +222,7 @@ def edges_per_batch(cutting_min: float, quantity: int, life_min: float, teeth: i
     """
     total = check.positive("time of cut [min]", cutting_min) * check.count("quantity", quantity)
     sets = check.finite("sets of edges", total / check.positive("tool life [min]", life_min))
-    return max(1, math.ceil(sets * (1.0 - check.ROUNDING))) * check.count("number of teeth", teeth)
+    return max(1, math.ceil(sets * (1.0 - check.ROUNDING))) * check.teeth(teeth)
 
 
 def tool_change_share(cutting_min: float, handling_min: float, change_min: float, life_min: float) -> float:

@@ -250,7 +250,7 @@ def teeth_in_cut(teeth: int, arc_deg: float) -> TeethInCut:
     ----------
     kalpakjian-schmid
     """
-    number = check.count("number of teeth", teeth)
+    number = check.teeth(teeth)
     arc = check.above_up_to("arc of engagement [deg]", arc_deg, 0.0, 360.0)
     mean = number * arc / 360.0
     nearest = round(mean)

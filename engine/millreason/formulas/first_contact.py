@@ -71,7 +71,7 @@ def first_contact(
     """
     leads = _corner_leads(depth_mm, feed_per_tooth_mm, kappa_deg, entry_deg, radial_rake_deg, axial_rake_deg)
     best = max(leads.values())
-    tie = check.ROUNDING * max(abs(lead) for lead in leads.values())
+    tie = check.ROUNDING * (depth_mm + feed_per_tooth_mm)
     points = "".join(name for name, lead in leads.items() if best - lead <= tie)
     behind = [best - lead for name, lead in leads.items() if name not in points]
     return FirstContact(points, min(behind, default=0.0))

@@ -116,7 +116,7 @@ def table_feed(feed_per_tooth_mm: float, teeth: int, spindle_speed_rpm: float) -
     ----------
     groover-manufacturing
     """
-    feed = check.positive("feed per tooth [mm]", feed_per_tooth_mm) * check.count("number of teeth", teeth)
+    feed = check.positive("feed per tooth [mm]", feed_per_tooth_mm) * check.teeth(teeth)
     return feed * check.positive("spindle speed [1/min]", spindle_speed_rpm)
 
 

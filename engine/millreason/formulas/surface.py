@@ -124,7 +124,7 @@ def roughness_with_runout(
     ----------
     boothroyd-knight, own derivation
     """
-    number = check.count("number of teeth", teeth)
+    number = check.teeth(teeth)
     perfect = radius_roughness(feed_per_tooth_mm, corner_radius_mm)
     runout = check.not_negative("axial run-out [mm]", runout_mm) * 1000.0
     alone = _parabola(number * feed_per_tooth_mm, corner_radius_mm)
@@ -170,7 +170,7 @@ def runout_for_single_mark(feed_per_tooth_mm: float, teeth: int, corner_radius_m
     own derivation
     """
     feed = check.positive("feed per tooth [mm]", feed_per_tooth_mm)
-    number = check.count("number of teeth", teeth)
+    number = check.teeth(teeth)
     half = number // 2
     radius = check.positive("corner radius [mm]", corner_radius_mm)
     return half * feed * (number - half) * feed / (2.0 * radius)

@@ -96,7 +96,7 @@ def peak_torque(
     ----------
     altintas-automation, own derivation
     """
-    number = check.count("number of teeth", teeth)
+    number = check.teeth(teeth)
     entry, leave = check.arc_ends(entry_deg, exit_deg)
     slope = check.kienzle_exponent(exponent)
     edge = _edge_force(depth_mm, feed_per_tooth_mm, kappa_deg, kc11_n_mm2, slope, factor)
@@ -104,7 +104,9 @@ def peak_torque(
     pitch = 360.0 / number
     # An arc of whole pitches does hold one tooth more for an instant, at its two ends.
     most = min(number, math.floor((leave - entry) / pitch * (1.0 + check.ROUNDING)) + 1)
-    share, carrying = max((_group_share(n, entry, leave, pitch, slope), n) for n in range(1, most + 1))
+    # Fewer than the whole pitches of the arc never cut together, so only the two largest groups compete.
+    groups = range(max(1, most - 1), most + 1)
+    share, carrying = max((_group_share(n, entry, leave, pitch, slope), n) for n in groups)
     return PeakLoad(edge * share, edge * share * lever, carrying)
 
 
@@ -258,7 +260,7 @@ def mean_plane_forces(
     ----------
     altintas-automation
     """
-    number = check.count("number of teeth", teeth)
+    number = check.teeth(teeth)
     first, last = (math.radians(angle) for angle in check.arc_ends(entry_deg, exit_deg))
     area = check.positive("depth of cut [mm]", depth_mm)
     area *= check.positive("feed per tooth [mm]", feed_per_tooth_mm)
