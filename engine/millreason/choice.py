@@ -15,7 +15,7 @@ from millreason.job import Job, read_job
 from millreason.knowledge import Knowledge, load_knowledge
 from millreason.limits import binding_limits
 from millreason.lookups import complete_situation, first_situation, look_up_usual, size_facts
-from millreason.materials import MaterialBook, load_materials
+from millreason.materials import Materials, load_materials
 from millreason.measures import BODY_FACTS, CUT_FACTS, Meter
 from millreason.own_cutters import own_candidates, own_cutters
 from millreason.plan import Plan, Planner
@@ -81,7 +81,7 @@ class Outcome:
 class Adviser:
     """The program with its knowledge and rules loaded; it answers any number of jobs."""
 
-    def __init__(self, knowledge: Knowledge, materials: MaterialBook, vocabulary: Vocabulary, rulebook: RuleBook, engine: str | None = None) -> None:
+    def __init__(self, knowledge: Knowledge, materials: Materials, vocabulary: Vocabulary, rulebook: RuleBook, engine: str | None = None) -> None:
         self.knowledge = knowledge
         self.materials = materials
         self.vocabulary = vocabulary
@@ -133,7 +133,7 @@ def load_adviser(shop: Path | None = None, engine: str | None = None, root: Path
     knowledge = load_knowledge(root, shop)
     vocabulary = load_vocabulary(knowledge.root)
     rulebook = load_rules(knowledge.root, vocabulary, shop, knowledge.sources, knowledge.strengths)
-    return Adviser(knowledge, load_materials(knowledge.root, (shop,) if shop else ()), vocabulary, rulebook, engine)
+    return Adviser(knowledge, load_materials(knowledge.root, shop, knowledge.sources), vocabulary, rulebook, engine)
 
 
 class _Run:

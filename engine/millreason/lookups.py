@@ -14,8 +14,7 @@ from millreason.formulas.motion import spindle_speed
 from millreason.formulas.passes import passes_across
 from millreason.job import Job
 from millreason.knowledge import Knowledge
-from millreason.material_lookup import look_up_material
-from millreason.materials import MaterialBook
+from millreason.materials import Materials
 from millreason.provenance import Basis
 from millreason.spindle import Spindle
 from millreason.trace import Question
@@ -39,7 +38,7 @@ class FirstSituation:
     question: Question | None = None
 
 
-def first_situation(job: Job, knowledge: Knowledge, materials: MaterialBook, vocabulary: Vocabulary) -> FirstSituation:
+def first_situation(job: Job, knowledge: Knowledge, materials: Materials, vocabulary: Vocabulary) -> FirstSituation:
     """Collect what the person gave and what can be looked up for it.
 
     Raises
@@ -112,16 +111,16 @@ def _look_up_interface(knowledge: Knowledge, situation: Situation) -> None:
             look_up(f"machine.usual_changer_{name}", getattr(interface.changer, name), interface.changer)
 
 
-def _look_up_material(job: Job, materials: MaterialBook, vocabulary: Vocabulary, result: FirstSituation) -> None:
+def _look_up_material(job: Job, materials: Materials, vocabulary: Vocabulary, result: FirstSituation) -> None:
     situation = result.situation
-    options = {name: vocabulary.facts[name].options for name in ("work.skin_words", "work.form_words")}
-    found = look_up_material(
-        materials, situation.value("work.material"), situation.value("work.condition"), situation.value("work.iso_group"),
-        job.given.get("work.hardness_hb"), options,
-    )  # fmt: skip
+    hardness = job.given.get("work.hardness_hb")
+    measured = (float(hardness.value), hardness.unit) if hardness and isinstance(hardness.value, int | float) else None
+    found = materials.look_up(situation.value("work.material"), situation.value("work.iso_group"), measured, situation.value("work.condition"))
     for fact in found.facts:
-        origin: Any = "given" if fact.given else "looked_up"
-        situation.set(fact.name, fact.value, origin, fact.by, fact.text, fact.basis)
+        value = tuple(fact.value) if isinstance(fact.value, list) else fact.value
+        if isinstance(value, int) and not isinstance(value, bool):
+            value = float(value)
+        situation.set(fact.name, value, "given" if fact.given else "looked_up", fact.by, fact.text, _record(fact.basis, fact.from_shop))
     result.contradictions.extend(found.contradictions)
     result.notes.extend(found.notes)
     if found.question is not None:
