@@ -6,37 +6,31 @@ from bisect import bisect_right
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
-from typing import Any, Literal
+from typing import Literal
 
-from pydantic import BaseModel, ConfigDict
+from pydantic import Field
 
 from millreason.errors import DataError, Finding, OutOfRangeError
+from millreason.provenance import Basis, KnowledgeFile, Many, Record, Source, check_bases
 from millreason.yaml_source import Document, read_model, read_yaml
 
 Scale = Literal["hb", "hv", "hrc", "mpa"]
 Kind = Literal["steel", "austenitic", "grey_iron", "other"]
 
 SCALE_NAMES: Mapping[str, str] = {"hb": "HB", "hv": "HV", "hrc": "HRC", "mpa": "MPa"}
-BASIS_KINDS = ("cited", "common_practice", "derived", "invented")
 
 
-class Strict(BaseModel):
-    """Base of the records read from knowledge files: frozen, strict, no unknown keys."""
-
-    model_config = ConfigDict(extra="forbid", frozen=True, strict=True)
-
-
-class Table(Strict):
+class Table(Record):
     """One conversion table; every column runs from soft to hard, None where the table is empty."""
 
     title: str
     basis: str
-    holds_for: list[Kind]
+    holds_for: Many[Kind]
     note: str = ""
-    columns: dict[Scale, list[float | None]]
+    columns: dict[Scale, Many[float | None]]
 
 
-class BrinellLimit(Strict):
+class BrinellLimit(Record):
     """Above which Brinell figure a reading is only a conversion."""
 
     hb: float
@@ -44,39 +38,36 @@ class BrinellLimit(Strict):
     basis: str
 
 
-class TensileLine(Strict):
+class TensileLine(Record):
     """Tensile strength from Brinell hardness as a straight line, for materials without a table."""
 
     factor: float
     offset: float
-    hb: tuple[float, float] | list[float]
+    hb: Many[float]
     basis: str
     says: str
 
 
-class PowerRun(Strict):
+class PowerRun(Record):
     """Unit power (J/mm3) or force (N/mm2) over Brinell hardness."""
 
-    for_: str
-    hb: list[float]
-    j_mm3: list[float] = []
-    n_mm2: list[float] = []
+    for_: str = Field(alias="for")
+    hb: Many[float]
+    j_mm3: Many[float] = ()
+    n_mm2: Many[float] = ()
     basis: str
 
-    model_config = ConfigDict(alias_generator=lambda name: name.rstrip("_"), extra="forbid", frozen=True, strict=True)
-
     @property
-    def values(self) -> list[float]:
+    def values(self) -> tuple[float, ...]:
         """The figures of the run, whichever unit it is kept in."""
         return self.j_mm3 or self.n_mm2
 
 
-class HardnessKnowledge(Strict):
+class HardnessKnowledge(KnowledgeFile):
     """Content of knowledge/hardness.yaml."""
 
-    bases: dict[str, dict[str, Any]]
     tables: dict[str, Table]
-    order: list[str]
+    order: Many[str]
     brinell_limit: BrinellLimit
     tensile: dict[Kind, TensileLine]
     not_for: dict[Kind, str]
@@ -91,12 +82,12 @@ class HardnessKnowledge(Strict):
 
 @dataclass(frozen=True)
 class Converted:
-    """A converted hardness or strength, the table it came from and whether that table was meant for the material."""
+    """A converted hardness or strength, its table, and whether that table is meant for the material."""
 
     value: float
     scale: Scale
     table: str
-    basis: Mapping[str, Any]
+    basis: Basis
     notes: tuple[str, ...] = ()
     in_scope: bool = True
 
@@ -106,48 +97,47 @@ class ForceRatio:
     """Factor on the cutting force for another hardness, with its basis and what limits it."""
 
     ratio: float
-    basis: Mapping[str, Any]
+    basis: Basis
     limit: str = ""
 
 
-def load_hardness(root: Path) -> HardnessKnowledge:
+def load_hardness(root: Path, sources: Mapping[str, Source]) -> HardnessKnowledge:
     """Read knowledge/hardness.yaml below a data root; all errors come at once, with their lines."""
     document = read_yaml(root / "knowledge" / "hardness.yaml", "knowledge/hardness.yaml")
     knowledge = read_model(document, HardnessKnowledge)
-    findings = [*check_bases(document, knowledge.bases), *_check_columns(document, knowledge)]
+    check_bases(document, knowledge.bases, sources)
+    findings = _check_columns(document, knowledge)
     if findings:
         raise DataError(findings)
     return knowledge
-
-
-def check_bases(document: Document, bases: Mapping[str, Mapping[str, Any]]) -> list[Finding]:
-    """Report every basis that is not exactly one of the four kinds."""
-    allowed = ", ".join(BASIS_KINDS)
-    return [
-        document.finding(("bases", label), f"has {sorted(basis)}; give exactly one of {allowed}.")
-        for label, basis in bases.items()
-        if sum(kind in basis for kind in BASIS_KINDS) != 1
-    ]
 
 
 def _check_columns(document: Document, knowledge: HardnessKnowledge) -> list[Finding]:
     findings = []
     for name, table in knowledge.tables.items():
         if len({len(column) for column in table.columns.values()}) != 1:
-            findings.append(document.finding(("tables", name, "columns"), "has columns of different length. Fill with null."))
+            findings.append(
+                document.finding(
+                    ("tables", name, "columns"), "has columns of different length. Fill with null."
+                )
+            )
         if table.basis not in knowledge.bases:
-            findings.append(document.finding(("tables", name, "basis"), f"{table.basis!r} is not under bases."))
+            findings.append(
+                document.finding(("tables", name, "basis"), f"{table.basis!r} is not under bases.")
+            )
     for name in knowledge.order:
         if name not in knowledge.tables:
             findings.append(document.finding(("order",), f"{name!r} is not a table."))
     for name, run in knowledge.runs.items():
-        if len(run.hb) != len(run.values) or run.hb != sorted(set(run.hb)):
+        if len(run.hb) != len(run.values) or list(run.hb) != sorted(set(run.hb)):
             place = "unit_power" if name in knowledge.unit_power else "force_runs"
             findings.append(document.finding((place, name), "needs rising hb and as many figures as hb."))
     return findings
 
 
-def convert_hardness(knowledge: HardnessKnowledge, value: float, scale_from: Scale, scale_to: Scale, kind: Kind = "steel") -> Converted:
+def convert_hardness(
+    knowledge: HardnessKnowledge, value: float, scale_from: Scale, scale_to: Scale, kind: Kind = "steel"
+) -> Converted:
     """Convert a hardness by the first table that holds for the material and covers the value.
 
     Raises
@@ -156,15 +146,19 @@ def convert_hardness(knowledge: HardnessKnowledge, value: float, scale_from: Sca
         if no table holds for the material, or none covers the value on both scales.
     """
     if scale_from == scale_to:
-        return Converted(value, scale_to, "as given", {"derived": "the figure as given"})
+        return Converted(value, scale_to, "as given", Basis(derived="the figure as given"))
     if (scale_from, scale_to) == ("hb", "mpa") and kind in knowledge.tensile:
         return _tensile_by_line(knowledge, value, kind)
     if kind != "steel":
-        raise OutOfRangeError("hardness conversion", f"asked for {kind} material", f"for steel. {_scope(knowledge, kind)}")
+        raise OutOfRangeError(
+            "hardness conversion", f"asked for {kind} material", f"for steel. {_scope(knowledge, kind)}"
+        )
     return _by_tables(knowledge, value, scale_from, scale_to)
 
 
-def hardness_as_hb(knowledge: HardnessKnowledge, value: float, scale: Scale, kind: Kind = "steel") -> Converted:
+def hardness_as_hb(
+    knowledge: HardnessKnowledge, value: float, scale: Scale, kind: Kind = "steel"
+) -> Converted:
     """Convert to Brinell for finding data: outside the scope of the steel tables too, but then marked so.
 
     Raises
@@ -175,7 +169,9 @@ def hardness_as_hb(knowledge: HardnessKnowledge, value: float, scale: Scale, kin
     if scale == "hb" or kind == "steel":
         return convert_hardness(knowledge, value, scale, "hb")
     found = _by_tables(knowledge, value, scale, "hb")
-    return Converted(found.value, "hb", found.table, found.basis, (*found.notes, _scope(knowledge, kind)), in_scope=False)
+    return Converted(
+        found.value, "hb", found.table, found.basis, (*found.notes, _scope(knowledge, kind)), in_scope=False
+    )
 
 
 def _scope(knowledge: HardnessKnowledge, kind: Kind) -> str:
@@ -185,9 +181,19 @@ def _scope(knowledge: HardnessKnowledge, kind: Kind) -> str:
 def _tensile_by_line(knowledge: HardnessKnowledge, hb: float, kind: Kind) -> Converted:
     line = knowledge.tensile[kind]
     if not line.hb[0] <= hb <= line.hb[1]:
-        raise OutOfRangeError("Brinell hardness", f"{hb:g} HB", f"between {line.hb[0]:g} and {line.hb[1]:g} HB for this relation")
+        raise OutOfRangeError(
+            "Brinell hardness",
+            f"{hb:g} HB",
+            f"between {line.hb[0]:g} and {line.hb[1]:g} HB for this relation",
+        )
     strength = line.factor * hb + line.offset
-    return Converted(round(strength), "mpa", f"{line.factor:g} HB {line.offset:+g}", knowledge.bases[line.basis], (line.says,))
+    return Converted(
+        round(strength),
+        "mpa",
+        f"{line.factor:g} HB {line.offset:+g}",
+        knowledge.bases[line.basis],
+        (line.says,),
+    )
 
 
 def _by_tables(knowledge: HardnessKnowledge, value: float, scale_from: Scale, scale_to: Scale) -> Converted:
@@ -201,11 +207,16 @@ def _by_tables(knowledge: HardnessKnowledge, value: float, scale_from: Scale, sc
         if points[0][0] <= value <= points[-1][0]:
             notes = [table.note] if table.note else []
             number = interpolate([x for x, _ in points], [y for _, y in points], value)
-            if "hb" in (scale_from, scale_to) and (value if scale_from == "hb" else number) > knowledge.brinell_limit.hb:
+            if (
+                "hb" in (scale_from, scale_to)
+                and (value if scale_from == "hb" else number) > knowledge.brinell_limit.hb
+            ):
                 notes.append(knowledge.brinell_limit.says)
             return Converted(round(number), scale_to, table.title, knowledge.bases[table.basis], tuple(notes))
     allowed = "; ".join(spans) or "on scales that a table joins"
-    raise OutOfRangeError("hardness", f"{value:g} {SCALE_NAMES[scale_from]} to {SCALE_NAMES[scale_to]}", f"within {allowed}")
+    raise OutOfRangeError(
+        "hardness", f"{value:g} {SCALE_NAMES[scale_from]} to {SCALE_NAMES[scale_to]}", f"within {allowed}"
+    )
 
 
 def _points(table: Table, scale_from: Scale, scale_to: Scale) -> list[tuple[float, float]]:
@@ -232,23 +243,32 @@ def interpolate(xs: Sequence[float], ys: Sequence[float], x: float) -> float:
     return ys[right - 1] + share * (ys[right] - ys[right - 1])
 
 
-def hardness_force_ratio(knowledge: HardnessKnowledge, run: str | None, hb_from: float, hb_to: float) -> ForceRatio:
+def hardness_force_ratio(
+    knowledge: HardnessKnowledge, run: str | None, hb_from: float, hb_to: float
+) -> ForceRatio:
     """Return the factor on the cutting force when the hardness is `hb_to` instead of `hb_from` [HB].
 
     The force moves as unit power does along a run of published figures; without a run it is not moved.
     """
     if run is None:
-        return ForceRatio(1.0, {"derived": "not moved"}, "No run of force over hardness is held for this material; the force is not moved.")
+        return ForceRatio(
+            1.0,
+            Basis(derived="not moved"),
+            "No run of force over hardness is held for this material; the force is not moved.",
+        )
     figures = knowledge.runs[run]
     ratio = interpolate(figures.hb, figures.values, hb_to) / interpolate(figures.hb, figures.values, hb_from)
-    text = f"force moved as unit power from {hb_from:.0f} to {hb_to:.0f} HB ({figures.for_}): factor {ratio:.3f}"
+    text = (
+        f"force moved as unit power from {hb_from:.0f} to {hb_to:.0f} HB ({figures.for_}): factor {ratio:.3f}"
+    )
     limit = ""
     if not figures.hb[0] <= hb_to <= figures.hb[-1]:
-        limit = f"The run for {figures.for_} covers {figures.hb[0]:g} to {figures.hb[-1]:g} HB; beyond that its end is held."
-    return ForceRatio(ratio, {"derived": f"{text}; {basis_text(knowledge.bases[figures.basis])}"}, limit)
+        span = f"{figures.hb[0]:g} to {figures.hb[-1]:g} HB"
+        limit = f"The run for {figures.for_} covers {span}; beyond that its end is held."
+    return ForceRatio(ratio, Basis(derived=f"{text}; {basis_text(knowledge.bases[figures.basis])}"), limit)
 
 
-def unit_power(knowledge: HardnessKnowledge, run: str, hb: float) -> tuple[float, Mapping[str, Any]]:
+def unit_power(knowledge: HardnessKnowledge, run: str, hb: float) -> tuple[float, Basis]:
     """Return unit power [J/mm3] at the cutter for a sharp tool and a feed of 0.30 mm, with its basis.
 
     Raises
@@ -260,13 +280,18 @@ def unit_power(knowledge: HardnessKnowledge, run: str, hb: float) -> tuple[float
     if figures is None:
         raise OutOfRangeError("unit power run", run, f"one of {', '.join(knowledge.unit_power)}")
     if not figures.hb[0] <= hb <= figures.hb[-1]:
-        raise OutOfRangeError("Brinell hardness", f"{hb:g} HB", f"between {figures.hb[0]:g} and {figures.hb[-1]:g} HB for {figures.for_}")
+        raise OutOfRangeError(
+            "Brinell hardness",
+            f"{hb:g} HB",
+            f"between {figures.hb[0]:g} and {figures.hb[-1]:g} HB for {figures.for_}",
+        )
     return interpolate(figures.hb, figures.values, hb), knowledge.bases[figures.basis]
 
 
-def basis_text(basis: Mapping[str, Any]) -> str:
+def basis_text(basis: Basis | None) -> str:
     """Return a basis as a short phrase, for use inside another basis."""
-    cited = basis.get("cited")
-    if cited:
-        return f"{cited['source']}, {cited['where']} ({cited['seen']})"
-    return str(basis.get("derived") or basis.get("common_practice") or basis.get("invented"))
+    if basis is None:
+        return "the shop's own record"
+    if basis.cited is not None:
+        return f"{basis.cited.source}, {basis.cited.where} ({basis.cited.seen})"
+    return basis.remark

@@ -2,12 +2,12 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
-from typing import Any, Literal
+from typing import Literal, TypeVar
 
 from pydantic import Field
 
-from millreason.hardness import Kind, Strict
+from millreason.hardness import Kind
+from millreason.provenance import KnowledgeFile, Many, Record
 
 Group = Literal["P", "M", "K", "N", "S", "H"]
 ChipForm = Literal["long", "segmented", "short"]
@@ -15,18 +15,26 @@ Trait = Literal[
     "gummy", "built_up_edge", "work_hardening", "abrasive", "low_conductivity", "high_conductivity",
     "hard", "cast_skin", "free_cutting", "reactive", "brittle", "fibrous",
 ]  # fmt: skip
-Hazard = Literal["magnesium_fire", "titanium_fire", "beryllium", "lead", "nickel_cobalt", "iron_dust", "combustible_dust"]
-Skin = Literal["none", "mill_scale", "cast_skin", "forged_scale", "flame_cut_edge", "weld", "hardened_skin", "alpha_case"]
+Hazard = Literal[
+    "magnesium_fire", "titanium_fire", "beryllium", "lead", "nickel_cobalt", "iron_dust", "combustible_dust"
+]
+Skin = Literal[
+    "none", "mill_scale", "cast_skin", "forged_scale", "flame_cut_edge", "weld", "hardened_skin", "alpha_case"
+]  # fmt: skip
+FormWord = Literal[
+    "plate", "bar", "billet", "block", "thin", "cover", "casting", "die_casting", "forging"
+]  # fmt: skip
+File = TypeVar("File", bound=KnowledgeFile)
 NameSystem = Literal["en", "number", "aisi", "uns", "jis", "din", "bs", "trade", "near"]
-Bases = Mapping[str, Mapping[str, Any]]
 
-class ForceRow(Strict):
+
+class ForceRow(Record):
     """One pair of force constants with its band at the reference chip."""
 
     for_: str = Field(alias="for")
     kc11: float
     mc: float
-    band: list[float]
+    band: Many[float]
     family: str
     type: Literal["published", "derived", "estimate"]
     follows: str | None = None
@@ -34,54 +42,52 @@ class ForceRow(Strict):
     note: str = ""
 
 
-class ForceFile(Strict):
+class ForceFile(KnowledgeFile):
     """Content of knowledge/materials/forces.yaml."""
 
-    bases: dict[str, dict[str, Any]]
     families: dict[str, str]
     reference_chip_mm: float
     rows: dict[str, ForceRow]
 
 
-class SpeedRow(Strict):
+class SpeedRow(Record):
     """Start values of one group of materials for one hardness range."""
 
     for_: str = Field(alias="for")
     edge: Literal["coated", "uncoated"]
-    hb: list[float]
-    speed: list[float]
-    fz45: list[float]
+    hb: Many[float]
+    speed: Many[float]
+    fz45: Many[float]
     basis: str
     note: str = ""
 
 
-class SpeedRun(Strict):
+class SpeedRun(Record):
     """The rows of one family from soft to hard."""
 
-    rows: list[str]
+    rows: Many[str]
     half_band: bool = False
 
 
-class Factor(Strict):
+class Factor(Record):
     """A factor with its basis."""
 
     factor: float
     basis: str
 
 
-class SpeedFile(Strict):
+class SpeedFile(KnowledgeFile):
     """Content of knowledge/speeds.yaml."""
 
-    bases: dict[str, dict[str, Any]]
     uncoated: dict[Group, Factor]
     rows: dict[str, SpeedRow]
     runs: dict[str, SpeedRun]
 
 
-class StateRecord(Strict):
+class StateRecord(Record):
     """A state of a material as a file gives it."""
 
-    hb: list[float]
+    hb: Many[float]
     force: str | None = None
     group_force: str | None = None
     group: Group | None = None
@@ -94,96 +100,95 @@ class HardenedState(StateRecord):
     state: str
 
 
-class Hardened(Strict):
+class Hardened(Record):
     """The hardened states of every family that hardens."""
 
     from_hb: float
     basis: str
-    states: list[HardenedState]
+    states: Many[HardenedState]
     usual: str
-    traits: list[Trait]
+    traits: Many[Trait]
     chip: ChipForm
 
 
-class Family(Strict):
+class Family(Record):
     """What all materials of one family share."""
 
     name: str
-    groups: list[Group]
+    groups: Many[Group]
     chip: ChipForm
-    traits: list[Trait]
-    hazards: list[Hazard] = []
+    traits: Many[Trait]
+    hazards: Many[Hazard] = ()
     speed: str
     table: Kind
     most_hb: float
     hardens: bool = False
 
 
-class FamilyFile(Strict):
+class FamilyFile(KnowledgeFile):
     """Content of knowledge/materials/families.yaml."""
 
-    bases: dict[str, dict[str, Any]]
-    basis: dict[str, str]
+    basis_of: dict[Literal["groups", "traits", "most_hb", "hardened"], str]
     range_margin: float
     figures_margin: float
     hardened: Hardened
     families: dict[str, Family]
 
 
-class FormWords(Strict):
+class FormWords(Record):
     """Words for the form or skin of a blank."""
 
-    words: list[str]
+    words: Many[str]
+    form: FormWord | None = None
     skin: Skin | None = None
-    form: str | None = None
 
 
-class GeneralWords(Strict):
+class GeneralWords(Record):
     """Words for a whole group of materials, and the question they lead to."""
 
-    words: list[str]
-    groups: list[Group]
+    words: Many[str]
+    groups: Many[Group]
     ask: str
-    such_as: list[str]
+    such_as: Many[str]
 
 
-class OutsideWords(Strict):
+class OutsideWords(Record):
     """Materials that are known by name only, and why no answer is given for them."""
 
-    words: list[str]
+    words: Many[str]
     why: str
 
 
-class WordFile(Strict):
+class WordFile(KnowledgeFile):
     """Content of knowledge/materials/words.yaml."""
 
-    bases: dict[str, dict[str, Any]]
     basis: str
-    states: dict[str, list[str]]
-    forms: list[FormWords]
-    general: list[GeneralWords]
-    outside: list[OutsideWords]
-    fillers: list[str]
+    states: dict[str, Many[str]]
+    forms: Many[FormWords]
+    general: Many[GeneralWords]
+    outside: Many[OutsideWords]
+    shared: dict[str, str]
+    fillers: Many[str]
 
 
-class MaterialRecord(Strict):
+class MaterialRecord(Record):
     """A material as a file gives it."""
 
     family: str
     names: dict[NameSystem, str | list[str]]
     states: dict[str, StateRecord]
     chip: ChipForm | None = None
-    traits: list[Trait] | None = None
-    hazards: list[Hazard] | None = None
+    traits: Many[Trait] | None = None
+    hazards: Many[Hazard] | None = None
     speed: str | None = None
-    basis: dict[Literal["names", "hb"], str] = {}
+    basis_of: dict[Literal["names", "hb"], str] = Field(default_factory=dict)
+    state_names: dict[str, str] = Field(default_factory=dict)
     note: str = ""
 
 
-class MaterialFile(Strict):
+class MaterialFile(KnowledgeFile):
     """Content of one file of materials; a shop's own file may bring force rows of its own."""
 
-    bases: dict[str, dict[str, Any]]
-    basis: dict[Literal["names", "hb"], str]
+    basis_of: dict[Literal["names", "hb"], str] = Field(default_factory=dict)
     materials: dict[str, MaterialRecord]
-    forces: dict[str, ForceRow] = {}
+    forces: dict[str, ForceRow] = Field(default_factory=dict)
