@@ -110,7 +110,7 @@ def materials() -> None:
 def materials_list(group: Any, shop: Path | None) -> None:
     """List every material with its family."""
     known = load(shop).materials
-    for material in known.list(group):
+    for material in known.entries(group):
         say(_material_line(known, material))
 
 

@@ -21,7 +21,7 @@ def buying_section(answer: Answer) -> Section | None:
         "Symbols of ISO 13399 (ISO/TS 13399-2 and -3, some of the meanings recalled). "
         "Hold the supplier's figures against them before you buy."
     )
-    return Section("buying", "Buying specification", (told, table))
+    return Section("buying", "Buying specification", (told, table), after="plan")
 
 
 def _body(answer: Answer, picks: Picks, plan: PlanRecord) -> tuple[Row, ...]:

@@ -6,7 +6,7 @@ import re
 
 _ALWAYS = re.compile(r"([\\`*\[\]<>|~$&])")
 _UNDERSCORE = re.compile(r"(?<![A-Za-z0-9])_|_(?![A-Za-z0-9])")
-_LINE_START = re.compile(r"^(\d+)([.)])|^([#+\-=])")
+_LINE_START = re.compile(r"^(\d+)([.)])(?=\s|$)|^([#+\-=])")
 
 
 def escape_markdown(text: str) -> str:
