@@ -24,6 +24,7 @@ NEEDED = (
     "depth_of_cut_mm",
     "width_of_cut_mm",
     "passes",
+    "layers",
 )
 
 Facts = Mapping[str, Any]
@@ -102,8 +103,11 @@ def _time_and_cover(seen: Facts, work: Facts, diameter: float) -> Iterator[Note]
     length, width, stock = metric(work["length"]), metric(work.get("width")), metric(work.get("stock"))
     steps, across = seen["steps"], seen["plan"].get("radial_passes") or 1
     travel = length + diameter + CLEARANCE_MM
-    cut = sum(step["passes"] * travel / step["table_feed_mm_min"] for step in steps)
-    time = cut + REPOSITION_MIN * (sum(step["passes"] for step in steps) - 1)
+    strokes = [step["passes"] * step.get("layers", 1) for step in steps]
+    cut = sum(
+        number * travel / step["table_feed_mm_min"] for number, step in zip(strokes, steps, strict=True)
+    )
+    time = cut + REPOSITION_MIN * (sum(strokes) - 1)
     shown = seen["plan"].get("time_min")
     right = "hit" if _same(shown, time, SAME_TIME) else "miss"
     yield right, f"time {short(shown)} min against {short(time)} with the whole travel"
@@ -113,7 +117,9 @@ def _time_and_cover(seen: Facts, work: Facts, diameter: float) -> Iterator[Note]
                 "miss",
                 f"{across} passes of {short(step['width_of_cut_mm'])} mm do not cover {short(width)} mm",
             )
-    removed = sum(step["passes"] / across * step["depth_of_cut_mm"] for step in steps)
+    removed = sum(
+        number / across * step["depth_of_cut_mm"] for number, step in zip(strokes, steps, strict=True)
+    )
     if stock and not _same(removed, stock, 2 * SAME):
         yield "miss", f"the steps remove {short(removed)} mm of the {short(stock)} mm stock"
 

@@ -53,7 +53,7 @@ def write_answer(adviser: Adviser, out: Outcome, openings: bool = True) -> Answe
         questions=_questions(adviser, out),
         conditions=list(out.conditions.values()),
         contradictions=list(out.contradictions),
-        notes=list(out.notes),
+        notes=[*out.unit_doubts, *out.notes],
         refusal=refusal,
         runners_up=[] if held or not chosen else [_candidate(tried, "stands") for tried in _others(out)],
         robustness=robustness(adviser, out, chosen) if chosen and not held else "",
@@ -140,12 +140,10 @@ def _cautions(out: Outcome) -> list[CautionRecord]:
 
 
 def _questions(adviser: Adviser, out: Outcome) -> list[Question]:
-    """Return the questions to put, those that must be answered first, at most six."""
+    """Return the questions to put, conditions and those that must be answered first, at most six."""
     order = adviser.vocabulary.order
     ranked = sorted(out.questions.values(), key=lambda question: (question.need != "must", order.get(question.fact, 0)))
-    if any(question.need == "must" for question in ranked):
-        ranked = [question for question in ranked if question.need == "must"] + [q for q in ranked if q.need == "useful"]
-    return ranked[:MOST_QUESTIONS]
+    return [*out.conditions.values(), *ranked][:MOST_QUESTIONS]
 
 
 def _others(out: Outcome) -> list[Tried]:

@@ -14,7 +14,7 @@ from millreason.inference import Firing
 from millreason.job import Job, read_job
 from millreason.knowledge import Knowledge, load_knowledge
 from millreason.limits import binding_limits
-from millreason.lookups import complete_situation, first_situation, look_up_usual, size_facts
+from millreason.lookups import complete_situation, first_situation, look_up_usual, size_facts, unit_doubts
 from millreason.materials import Materials, load_materials
 from millreason.measures import BODY_FACTS, CUT_FACTS, Meter
 from millreason.own_cutters import own_candidates, own_cutters
@@ -61,6 +61,7 @@ class Outcome:
     conditions: dict[str, Question] = field(default_factory=dict)
     contradictions: list[str] = field(default_factory=list)
     notes: list[str] = field(default_factory=list)
+    unit_doubts: list[str] = field(default_factory=list)
     ledgers: Ledgers | None = None
     separate: dict[str, str] = field(default_factory=dict)
     stands: list[Tried] = field(default_factory=list)
@@ -147,6 +148,7 @@ class _Run:
         self._situation = first.situation
         tuning = Tuning({name: entry.how for name, entry in adviser.vocabulary.adjustables.items()}, {}, {})
         self._out = Outcome(job, self._situation, tuning, contradictions=list(first.contradictions), notes=list(first.notes))
+        self._out.unit_doubts = unit_doubts(first.situation, adviser.vocabulary, self._practice["unit_doubt_factor"].number)
         if first.question is not None:
             self._out.questions[first.question.fact] = first.question
 
@@ -396,6 +398,8 @@ class _Run:
             facts["answer.verdict"] = "conditional"
         if out.contradictions:
             facts["answer.contradictions"] = ("some",)
+        if out.unit_doubts:
+            facts["answer.unit_doubt"] = ("some",)
         return facts
 
     def _record(self, stage: Stage, firing: Firing) -> FiringRecord:

@@ -57,6 +57,20 @@ def first_situation(job: Job, knowledge: Knowledge, materials: Materials, vocabu
     return result
 
 
+def unit_doubts(situation: Situation, vocabulary: Vocabulary, far: float) -> list[str]:
+    """Return a sentence for every given number that lies so far from the usual span that its unit is in doubt."""
+    doubts = []
+    for record in situation.records():
+        definition = vocabulary.facts.get(record.name)
+        if record.origin != "given" or definition is None or definition.plausible is None or not isinstance(record.value, float):
+            continue
+        low, high = definition.plausible
+        if not low / far <= record.value <= high * far:
+            usual = f"{low:g} to {high:g} {definition.unit}"
+            doubts.append(f"{definition.means}: {record.text or record.value} is far from the usual {usual}; is the unit right?")
+    return doubts
+
+
 def look_up_usual(situation: Situation, knowledge: Knowledge) -> bool:
     """Look up what is usual for the interface and drive as they are known by now; return whether anything is new."""
     practice, before = knowledge.practice, len(situation.records())
@@ -153,8 +167,8 @@ def complete_situation(situation: Situation, knowledge: Knowledge, vocabulary: V
     width = fact("work.width_mm")
     if width is not None:
         share = knowledge.practice["width_to_diameter_one_pass"]
-        situation.set("job.one_pass_diameter_mm", width / (share.high or 1.0), "computed", "width over the largest share of the diameter")
-        situation.set("job.one_pass_roomy_diameter_mm", width / (share.value or 1.0), "computed", "width over the usual share of the diameter")
+        situation.set("job.one_pass_least_mm", width / (share.high or 1.0), "computed", "width over the largest share of the diameter")
+        situation.set("job.one_pass_most_mm", width / (share.low or 1.0), "computed", "width over the smallest share of the diameter")
     fluids = fact("machine.fluids") or ()
     supplied = ("dry", *(_SUPPLIES[fluid] for fluid in fluids if fluid in _SUPPLIES))
     situation.set("machine.coolants", tuple(dict.fromkeys(supplied)), "computed", "fluids of the machine")

@@ -33,6 +33,7 @@ BODY_FACTS = frozenset(
         "plan.outermost_diameter_mm", "plan.changer_full_use", "plan.changer_empty_use", "plan.mass_kg", "plan.mass_use",
         "plan.moment_nm", "plan.moment_use", "plan.passes_across", "plan.width_to_diameter", "plan.uncovered",
         "pick.cutter_class", "pick.kappa_deg", "pick.diameter_mm", "pick.mounting", "plan.width_of_cut_mm",
+        "plan.usual_diameter_use", "plan.pocket_use", "plan.pocket_corner_use", "plan.overhang_to_diameter",
     }
 )  # fmt: skip
 CUT_FACTS = BODY_FACTS | {
@@ -123,6 +124,7 @@ class Meter:
             "mass_to_hand": assembly.mass_kg / self._number("lift_ideal_kg"),
             "body_speed_use": speed / limit,
             "body_speed_known": not math.isinf(candidate.speed_limit_rpm),
+            "usual_diameter_use": _over(candidate.diameter_mm, self._fact("machine.largest_usual_diameter_mm")),
             "ramp_deg": self._ramp(plan),
             "overhang_to_diameter": self.gauge_length(candidate) / candidate.diameter_mm,
         }
@@ -137,7 +139,11 @@ class Meter:
     def _passes(self, plan: Plan) -> dict[str, Any]:
         layout, first = plan.layout, plan.loads[0]
         pocket = self._fact("work.feature") == "closed_pocket"
+        outermost = plan.candidate.outermost_mm
+        smaller = min(self._fact("work.width_mm"), self._fact("work.length_mm"))
         return {
+            "pocket_use": outermost / smaller if pocket else None,
+            "pocket_corner_use": _over(outermost / 2, self._fact("work.pocket_corner_mm")) if pocket else None,
             "passes_across": float(layout.passes),
             "layers": float(plan.layers),
             "layers_for_power": float(plan.layers_for_power),

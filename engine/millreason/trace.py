@@ -10,7 +10,7 @@ from typing import Any, Literal
 Origin = Literal["given", "looked_up", "computed", "assumed", "concluded"]
 Verdict = Literal["recommend", "recommend_with_warnings", "conditional", "ask", "refuse"]
 Severity = Literal["note", "caution", "warning"]
-Plain = str | float | bool | list[str] | list[float] | list[list[float]] | None
+Plain = str | int | float | bool | list[str] | list[float] | list[list[float]] | None
 
 
 @dataclass(frozen=True)
