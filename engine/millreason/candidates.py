@@ -7,13 +7,13 @@ import math
 from collections.abc import Iterable, Iterator, Mapping
 from dataclasses import dataclass
 from itertools import product
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, NamedTuple
 
 from millreason.trace import Evidence, Ledger, OptionLedger
 
 if TYPE_CHECKING:
-    from millreason.job import OwnCutter
     from millreason.cutters import BodySize, CornerOption, CutterFamily, CuttersFile, RakeOption
+    from millreason.job import OwnCutter
 
 
 @dataclass(frozen=True)
@@ -75,11 +75,20 @@ class Ledgers:
     """What was said for and against every option of every pick."""
 
     def __init__(self, options: Mapping[str, Iterable[str]]) -> None:
-        self._evidence: dict[str, dict[str, list[Evidence]]] = {pick: {option: [] for option in names} for pick, names in options.items()}
+        self._evidence: dict[str, dict[str, list[Evidence]]] = {
+            pick: {option: [] for option in names} for pick, names in options.items()
+        }
 
     def add(self, pick: str, option: str, evidence: Evidence) -> None:
         """Write one piece of evidence into the ledger of a pick."""
         self._evidence.setdefault(pick, {}).setdefault(option, []).append(evidence)
+
+    def scores(self, pick: str) -> dict[str, float | None]:
+        """Return the balance of every option of a pick; None for one that is ruled out."""
+        return {
+            option: None if self.ruled_out(pick, option) else self.balance(pick, option)
+            for option in self._evidence.get(pick, {})
+        }
 
     def balance(self, pick: str, option: str) -> float:
         """Return what speaks for an option less what speaks against it."""
@@ -100,7 +109,9 @@ class Ledgers:
         result = []
         for pick, options in self._evidence.items():
             lines = [
-                OptionLedger(option, self.balance(pick, option), bool(self.ruled_out(pick, option)), list(evidence))
+                OptionLedger(
+                    option, self.balance(pick, option), bool(self.ruled_out(pick, option)), list(evidence)
+                )
                 for option, evidence in options.items()
             ]
             lines.sort(key=lambda line: (line.ruled_out, -line.balance))
@@ -118,8 +129,7 @@ def kappa_key(kappa_deg: float) -> str:
     return f"{kappa_deg:g}"
 
 
-@dataclass(frozen=True)
-class _Parts:
+class _Parts(NamedTuple):
     """Everything of a tool but its body and size."""
 
     pitch: str
@@ -131,18 +141,29 @@ class _Parts:
 
 
 class Catalogue:
-    """All tools that exist for a job, tried best first."""
+    """All tools that exist for a job, tried best first; `only` keeps those that have the options it names."""
 
-    def __init__(self, cutters: CuttersFile, ledgers: Ledgers, series: str, mountings: Iterable[str]) -> None:
+    def __init__(
+        self,
+        cutters: CuttersFile,
+        ledgers: Ledgers,
+        series: str,
+        mountings: Iterable[str],
+        only: Mapping[str, str] | None = None,
+    ) -> None:
         self._cutters = cutters
         self._ledgers = ledgers
+        self._only = only or {}
+        self._scores: dict[str, dict[str, float | None]] = {}
         self._sizes = [size for size in cutters.sizes if size.series == series]
         self._interface_mountings = frozenset(mountings)
         self._mounting_of: dict[tuple[str, str], str | None] = {}
 
     def best_first(self) -> Iterator[Candidate]:
         """Yield every candidate whose parts are not ruled out, best evidence first."""
-        lanes = [lane for place, family in enumerate(self._cutters.families) if (lane := self._lane(place, family))]
+        lanes = [
+            lane for place, family in enumerate(self._cutters.families) if (lane := self._lane(place, family))
+        ]
         heap = [(-lane.score(0, 0), lane.place, 0, 0) for lane in lanes]
         by_place = {lane.place: lane for lane in lanes}
         heapq.heapify(heap)
@@ -162,7 +183,10 @@ class Catalogue:
         return sum(1 for _ in self.best_first())
 
     def _lane(self, place: int, family: CutterFamily) -> _Lane | None:
-        body = self._score("cutter_class", family.cutter_class), self._score("kappa_deg", kappa_key(family.kappa_deg))
+        body = (
+            self._score("cutter_class", family.cutter_class),
+            self._score("kappa_deg", kappa_key(family.kappa_deg)),
+        )
         if None in body:
             return None
         sizes = [
@@ -179,29 +203,53 @@ class Catalogue:
         return _Lane(place, family, sum(score or 0.0 for score in body), sizes, parts)
 
     def _score(self, pick: str, option: str) -> float | None:
-        return None if self._ledgers.ruled_out(pick, option) else self._ledgers.balance(pick, option)
+        if not self._wanted(pick, option):
+            return None
+        if pick not in self._scores:
+            self._scores[pick] = self._ledgers.scores(pick)
+        return self._scores[pick].get(option, 0.0)
+
+    def _wanted(self, pick: str, option: str) -> bool:
+        return self._only.get(pick, option) == option
 
     def _parts(self, family: CutterFamily) -> Iterator[_Parts]:
-        wipers = ("none", "one", "all") if family.wipers else ("none",)
-        rakes = [(rake, edge) for rake in family.rakes for edge in rake.edges]
-        for pitch, (rake, edge), corner, wiper in product(family.pitches, rakes, family.corners, wipers):
-            named = {"pitch": pitch, "rake": rake.rake, "edge": edge, "corner": corner.corner, "wiper": wiper}
-            scores = [self._score(pick, option) for pick, option in named.items()]
-            if None not in scores:
-                yield _Parts(pitch, rake, edge, corner, wiper, sum(score or 0.0 for score in scores))
+        # What is ruled out is left out before the combining: most of the combinations never arise.
+        wipers = self._open("wiper", ("none", "one", "all") if family.wipers else ("none",))
+        pitches = self._open("pitch", family.pitches)
+        corners = [
+            (score, corner)
+            for corner in family.corners
+            if (score := self._score("corner", corner.corner)) is not None
+        ]
+        rakes = [
+            (rake_score + edge_score, rake, edge)
+            for rake in family.rakes
+            if (rake_score := self._score("rake", rake.rake)) is not None
+            for edge_score, edge in self._open("edge", rake.edges)
+        ]
+        for (a, pitch), (b, rake, edge), (c, corner), (d, wiper) in product(pitches, rakes, corners, wipers):
+            yield _Parts(pitch, rake, edge, corner, wiper, a + b + c + d)
+
+    def _open(self, pick: str, options: Iterable[str]) -> list[tuple[float, str]]:
+        return [(score, option) for option in options if (score := self._score(pick, option)) is not None]
 
     def _mounting(self, family: CutterFamily, size: BodySize) -> str | None:
         key = family.id, size.label
         if key not in self._mounting_of:
             made = dict.fromkeys(row.mounting for row in self._cutters.mountings_for(family, size))
-            self._mounting_of[key] = self._ledgers.best("mounting", [name for name in made if name in self._interface_mountings])
+            fits = [
+                name for name in made if name in self._interface_mountings and self._wanted("mounting", name)
+            ]
+            self._mounting_of[key] = self._ledgers.best("mounting", fits)
         return self._mounting_of[key]
 
     def _candidate(self, lane: _Lane, row: int, column: int) -> Candidate | None:
         family, size, parts = lane.family, lane.sizes[row][1], lane.parts[column]
         teeth = family.teeth_for(size, parts.pitch)
         mounting = self._mounting(family, size)
-        pockets = self._ledgers.best("pockets", family.pockets_for(size))
+        pockets = self._ledgers.best(
+            "pockets", [name for name in family.pockets_for(size) if self._wanted("pockets", name)]
+        )
         if teeth is None or mounting is None or pockets is None or parts.wiper not in family.wipers_for(size):
             return None
         land = max(family.wipers.lands_mm) if family.wipers and parts.wiper != "none" else 0.0
