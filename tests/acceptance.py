@@ -62,13 +62,9 @@ def score(case: Case, answer: Answer, expect: Facts | None = None) -> Score:
     wanted = case["expect"] if expect is None else expect
     seen = view(answer)
     notes = [note for judge in _JUDGES for note in judge(wanted, seen, case["job"])]
-    kinds = {
-        kind: tuple(text for found, text in notes if found == kind) for kind in ("hit", "remark", "miss")
-    }
+    kinds = {kind: tuple(text for found, text in notes if found == kind) for kind in ("hit", "remark", "miss")}
     head = case["case"]
-    return Score(
-        head["id"], head["title"], str(answer.get("verdict")), kinds["hit"], kinds["remark"], kinds["miss"]
-    )
+    return Score(head["id"], head["title"], str(answer.get("verdict")), kinds["hit"], kinds["remark"], kinds["miss"])
 
 
 def _note(right: bool, text: str) -> Note:
@@ -131,16 +127,20 @@ def _questions(expect: Facts, seen: Facts, job: Facts) -> Iterator[Note]:
     ask = expect.get("ask")
     if not ask:
         return
-    asked = [question["fact"] for question in seen.get("questions") or []]
+    asked = _asked(seen)
     for fact in ask.get("must", []):
         names = fact if isinstance(fact, list) else [fact]
-        yield _note(
-            not set(names).isdisjoint(asked), f"asks for {' or '.join(names)} (asked: {', '.join(asked)})"
-        )
+        yield _note(not set(names).isdisjoint(asked), f"asks for {' or '.join(names)} (asked: {', '.join(asked)})")
     for fact in set(asked).intersection(ask.get("must_not", [])):
         yield "miss", f"asks for {fact}, which the job states"
     if len(asked) > ask.get("most", 6):
         yield "miss", f"{len(asked)} questions at once; at most {ask.get('most', 6)}"
+
+
+def _asked(answer: Answer) -> list[str]:
+    """Return the facts that the answer wants to know, the conditions it waits for included."""
+    wanted = [*(answer.get("conditions") or []), *(answer.get("questions") or [])]
+    return list(dict.fromkeys(entry["fact"] for entry in wanted))
 
 
 def _refusal(expect: Facts, seen: Facts, job: Facts) -> Iterator[Note]:
@@ -150,9 +150,7 @@ def _refusal(expect: Facts, seen: Facts, job: Facts) -> Iterator[Note]:
     refusal = seen.get("refusal") or {}
     limits = refusal.get("limits") or []
     for reason in wanted.get("limits", []):
-        found = any(
-            entry["key"] in reason.get("keys", []) or _says(entry, reason.get("says")) for entry in limits
-        )
+        found = any(entry["key"] in reason.get("keys", []) or _says(entry, reason.get("says")) for entry in limits)
         yield _note(found, f"refusal names {reason['what']}")
     only = set(wanted.get("not_only", []))
     if limits and {entry["key"] for entry in limits} <= only:
@@ -224,8 +222,7 @@ def answer_of(path: Path) -> Answer:
 
 def confirmed_job(case: Case, answer: Answer) -> Facts:
     """Return the job of a case with a yes to every condition that the answer waits for."""
-    waiting = [question["fact"] for question in answer.get("questions") or []]
-    yes = {fact.removeprefix("confirm."): True for fact in waiting if fact.startswith("confirm.")}
+    yes = {fact.removeprefix("confirm."): True for fact in _asked(answer) if fact.startswith("confirm.")}
     return {**case["job"], "confirm": {**case["job"].get("confirm", {}), **yes}}
 
 
@@ -262,9 +259,7 @@ def table(scores: list[Score], verbose: bool = False) -> str:
         lines.append(f"{entry.case_id:<6}{entry.verdict:<26}{counts}  {entry.title}")
         lines += [f"      miss: {text}" for text in entry.misses]
         if verbose:
-            lines += [f"      remark: {text}" for text in entry.remarks] + [
-                f"      hit: {text}" for text in entry.hits
-            ]
+            lines += [f"      remark: {text}" for text in entry.remarks] + [f"      hit: {text}" for text in entry.hits]
     passed = sum(entry.passed for entry in scores)
     return "\n".join([*lines, f"{passed} of {len(scores)} pass"])
 

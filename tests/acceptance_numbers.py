@@ -34,9 +34,7 @@ Note = tuple[str, str]  # ("hit" | "remark" | "miss", what)
 def gaps(seen: Facts) -> list[str]:
     """Return what a plan leaves out that every plan must state."""
     lacking = [
-        f"plan without {name}"
-        for name in ("diameter_mm", "teeth")
-        if seen["steps"] and not seen["picks"].get(name)
+        f"plan without {name}" for name in ("diameter_mm", "teeth") if seen["steps"] and not seen["picks"].get(name)
     ]
     return lacking + [
         f"step {number} without {name}"
@@ -90,11 +88,7 @@ def _turns(step: Facts, picks: Facts) -> float:
         for diameter in (picks.get("largest_diameter_mm") or picks["diameter_mm"], picks["diameter_mm"])
     )
     stated = step.get("spindle_speed_rpm")
-    if (
-        picks.get("kappa_deg") == "round"
-        and stated
-        and slowest * (1 - SAME) <= stated <= fastest * (1 + SAME)
-    ):
+    if picks.get("kappa_deg") == "round" and stated and slowest * (1 - SAME) <= stated <= fastest * (1 + SAME):
         return float(stated)
     return float(fastest)
 
@@ -103,10 +97,8 @@ def _time_and_cover(seen: Facts, work: Facts, diameter: float) -> Iterator[Note]
     length, width, stock = metric(work["length"]), metric(work.get("width")), metric(work.get("stock"))
     steps, across = seen["steps"], seen["plan"].get("radial_passes") or 1
     travel = length + diameter + CLEARANCE_MM
-    strokes = [step["passes"] * step.get("layers", 1) for step in steps]
-    cut = sum(
-        number * travel / step["table_feed_mm_min"] for number, step in zip(strokes, steps, strict=True)
-    )
+    strokes = [step["passes"] * step["layers"] for step in steps]
+    cut = sum(number * travel / step["table_feed_mm_min"] for number, step in zip(strokes, steps, strict=True))
     time = cut + REPOSITION_MIN * (sum(strokes) - 1)
     shown = seen["plan"].get("time_min")
     right = "hit" if _same(shown, time, SAME_TIME) else "miss"
@@ -117,9 +109,7 @@ def _time_and_cover(seen: Facts, work: Facts, diameter: float) -> Iterator[Note]
                 "miss",
                 f"{across} passes of {short(step['width_of_cut_mm'])} mm do not cover {short(width)} mm",
             )
-    removed = sum(
-        number / across * step["depth_of_cut_mm"] for number, step in zip(strokes, steps, strict=True)
-    )
+    removed = sum(number / across * step["depth_of_cut_mm"] for number, step in zip(strokes, steps, strict=True))
     if stock and not _same(removed, stock, 2 * SAME):
         yield "miss", f"the steps remove {short(removed)} mm of the {short(stock)} mm stock"
 
@@ -157,9 +147,7 @@ def _power(step: Facts, machine: Facts, efficiency: float) -> Iterator[Note]:
     turning = 2.0 * math.pi * step["spindle_speed_rpm"] / 60_000.0
     bounds = [motor * efficiency] if motor else []
     bounds += [torque * turning] if torque else []
-    if bounds and (
-        step.get("net_power_kw") is None or step["net_power_kw"] > min(bounds) * (1.0 + SAME / 2.0)
-    ):
+    if bounds and (step.get("net_power_kw") is None or step["net_power_kw"] > min(bounds) * (1.0 + SAME / 2.0)):
         yield (
             "miss",
             f"net power {short(step.get('net_power_kw'))} kW, available {short(min(bounds))} at this speed",

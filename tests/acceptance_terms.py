@@ -124,16 +124,13 @@ def values_at(seen: Mapping[str, Any], path: str) -> list[Any]:
 
 def all_hold(conditions: Mapping[str, Any], seen: Mapping[str, Any]) -> bool:
     """Tell whether every named value meets its condition (for steps: in at least one step)."""
-    return all(
-        any(holds(test, value) for value in values_at(seen, path)) for path, test in conditions.items()
-    )
+    return all(any(holds(test, value) for value in values_at(seen, path)) for path, test in conditions.items())
 
 
 def sentences(answer: Mapping[str, Any]) -> list[str]:
     """Return every sentence that advises the reader: not the trace, not what was rejected."""
     told = [
-        answer.get(part)
-        for part in ("cautions", "questions", "refusal", "assumptions", "checks", "plan", "summary")
+        answer.get(part) for part in ("cautions", "questions", "refusal", "assumptions", "checks", "plan", "summary")
     ]
     return [part for text in _strings(told) for part in re.split(r"(?<=[.;!?])\s+", text)]
 

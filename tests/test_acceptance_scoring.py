@@ -40,6 +40,7 @@ def step(
         "net_power_kw": power,
         "torque_nm": 60_000.0 * power / (2.0 * math.pi * turns),
         "passes": passes,
+        "layers": 1,
     }
 
 
@@ -104,7 +105,8 @@ def magnesium_answer(confirmed: bool) -> JobAnswer:
         "picks": picks,
         "plan": plan if confirmed else None,
         "cautions": [{"key": key, "text": "Never use water on burning chips."} for key in keys],
-        "questions": [] if confirmed else [{"fact": fact, "text": "?"} for fact in facts],
+        "questions": [],
+        "conditions": [] if confirmed else [{"fact": fact, "text": "?"} for fact in facts],
     }
 
 
@@ -213,6 +215,14 @@ def test_wrong_answer_is_caught(change: Change, caught: str) -> None:
     assert caught in misses_of(PLATE, plate_answer(), change)
 
 
+def test_layers_of_a_step_count_as_passes() -> None:
+    answer = plate_answer()
+    answer["plan"]["steps"] = [step(answer["picks"], 220.0, 0.15, 1.5, 51.5, 2.9, passes=4) | {"layers": 2}]
+    assert "time 2.618 min against 5.285" in misses_of(PLATE, answer)
+    answer["plan"]["time_min"] = 5.285
+    assert misses_of(PLATE, answer) == ""
+
+
 def test_neighbours_not_emptied_is_caught() -> None:
     untold = misses_of(
         PLATE, plate_answer(), put("picks.largest_diameter_mm", 96.0), drop_caution("atc_diameter_neighbours")
@@ -289,9 +299,7 @@ def test_conditional_case_is_run_again_with_its_conditions_confirmed() -> None:
 def test_finer_chips_after_confirmation_are_caught() -> None:
     fine = magnesium_answer(confirmed=True)
     fine["plan"]["steps"][0]["feed_per_tooth_mm"] = 0.05
-    scores = run_case(
-        MAGNESIUM, lambda path: fine if path != MAGNESIUM["path"] else magnesium_answer(confirmed=False)
-    )
+    scores = run_case(MAGNESIUM, lambda path: fine if path != MAGNESIUM["path"] else magnesium_answer(confirmed=False))
     assert any("feed_per_tooth_mm 0.05 against" in miss for miss in scores[1].misses)
 
 
@@ -304,9 +312,7 @@ def test_round_insert_reads_as_round_angle() -> None:
 
 
 def test_table_shows_verdict_counts_and_misses() -> None:
-    shown = table(
-        [Score("A99", "A title", "refuse", ("a",), (), ("wrong pitch",)), score(PLATE, plate_answer())]
-    )
+    shown = table([Score("A99", "A title", "refuse", ("a",), (), ("wrong pitch",)), score(PLATE, plate_answer())])
     assert "A99" in shown
     assert "miss: wrong pitch" in shown
     assert shown.endswith("1 of 2 pass")
