@@ -12,6 +12,7 @@ from acceptance_terms import CAUTIONS, STEP_VALUES, TESTS, VERDICTS, holds
 from millreason.vocabulary import load_vocabulary
 
 ROOT = Path(__file__).resolve().parent.parent
+RARE = {"weld", "hardened_skin", "other"}  # not yet the point of a case
 PICK_OPTIONS = {name: set(fact.options) for name, fact in load_vocabulary(ROOT).picks.items()}
 PLAIN_PICKS = {"largest_diameter_mm", "lead_deg", "radial_passes", "axial_passes"}
 _EXPECT_KEYS = """
@@ -92,3 +93,18 @@ def test_case_file_is_well_formed(case: Case) -> None:
 def test_no_id_is_used_twice() -> None:
     ids = [case["case"]["id"] for case in load_cases()]
     assert len(ids) == len(set(ids)) == len(list((ROOT / "cases" / "accept").glob("*.yaml")))
+
+
+@pytest.mark.parametrize(
+    "fact", ["work.feature", "work.interruptions", "work.skin", "machine.class", "machine.control"]
+)
+def test_cases_reach_every_kind_of_job(fact: str) -> None:
+    section, name = fact.split(".")
+    values = [case["job"].get(section, {}).get(name) for case in load_cases()]
+    used = {value for found in values for value in (found if isinstance(found, list) else [found])}
+    unused = set(load_vocabulary(ROOT).facts[fact].options) - used - RARE
+    assert not unused, f"no case has {fact} {sorted(map(str, unused))}"
+
+
+def test_cases_reach_every_verdict() -> None:
+    assert {verdict for case in load_cases() for verdict in case["expect"]["verdict"]} == VERDICTS
