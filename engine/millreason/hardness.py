@@ -117,14 +117,10 @@ def _check_columns(document: Document, knowledge: HardnessKnowledge) -> list[Fin
     for name, table in knowledge.tables.items():
         if len({len(column) for column in table.columns.values()}) != 1:
             findings.append(
-                document.finding(
-                    ("tables", name, "columns"), "has columns of different length. Fill with null."
-                )
+                document.finding(("tables", name, "columns"), "has columns of different length. Fill with null.")
             )
         if table.basis not in knowledge.bases:
-            findings.append(
-                document.finding(("tables", name, "basis"), f"{table.basis!r} is not under bases.")
-            )
+            findings.append(document.finding(("tables", name, "basis"), f"{table.basis!r} is not under bases."))
     for name in knowledge.order:
         if name not in knowledge.tables:
             findings.append(document.finding(("order",), f"{name!r} is not a table."))
@@ -156,9 +152,7 @@ def convert_hardness(
     return _by_tables(knowledge, value, scale_from, scale_to)
 
 
-def hardness_as_hb(
-    knowledge: HardnessKnowledge, value: float, scale: Scale, kind: Kind = "steel"
-) -> Converted:
+def hardness_as_hb(knowledge: HardnessKnowledge, value: float, scale: Scale, kind: Kind = "steel") -> Converted:
     """Convert to Brinell for finding data: outside the scope of the steel tables too, but then marked so.
 
     Raises
@@ -243,9 +237,7 @@ def interpolate(xs: Sequence[float], ys: Sequence[float], x: float) -> float:
     return ys[right - 1] + share * (ys[right] - ys[right - 1])
 
 
-def hardness_force_ratio(
-    knowledge: HardnessKnowledge, run: str | None, hb_from: float, hb_to: float
-) -> ForceRatio:
+def hardness_force_ratio(knowledge: HardnessKnowledge, run: str | None, hb_from: float, hb_to: float) -> ForceRatio:
     """Return the factor on the cutting force when the hardness is `hb_to` instead of `hb_from` [HB].
 
     The force moves as unit power does along a run of published figures; without a run it is not moved.
@@ -258,9 +250,7 @@ def hardness_force_ratio(
         )
     figures = knowledge.runs[run]
     ratio = interpolate(figures.hb, figures.values, hb_to) / interpolate(figures.hb, figures.values, hb_from)
-    text = (
-        f"force moved as unit power from {hb_from:.0f} to {hb_to:.0f} HB ({figures.for_}): factor {ratio:.3f}"
-    )
+    text = f"force moved as unit power from {hb_from:.0f} to {hb_to:.0f} HB ({figures.for_}): factor {ratio:.3f}"
     limit = ""
     if not figures.hb[0] <= hb_to <= figures.hb[-1]:
         span = f"{figures.hb[0]:g} to {figures.hb[-1]:g} HB"

@@ -41,7 +41,7 @@ from millreason.provenance import (
 from millreason.yaml_source import Document, read_model, read_yaml
 
 if TYPE_CHECKING:
-    from millreason.material_search import Index
+    from millreason.material_index import Index
 
 # The label of entries that stand for a whole group of materials under a trade word.
 GROUP_NAME = "group_name"
@@ -135,8 +135,8 @@ class MaterialBook:
 
     @cached_property
     def index(self) -> Index:
-        """The index of words and names; see `material_search`."""
-        from millreason.material_search import build_index
+        """The index of words and names; see `material_index`."""
+        from millreason.material_index import build_index
 
         return build_index(self)
 
@@ -233,14 +233,9 @@ def _resolve(
     return Material(
         id=name,
         family=record.family,
-        names={
-            system: (names,) if isinstance(names, str) else tuple(names)
-            for system, names in record.names.items()
-        },
+        names={system: (names,) if isinstance(names, str) else tuple(names) for system, names in record.names.items()},
         states=tuple(_state(key, state, record, book, hb_basis) for key, state in record.states.items()),
-        shared_states=tuple(
-            _state(s.state, s, record, book, book.family_file.bases[hardened.basis]) for s in shared
-        ),
+        shared_states=tuple(_state(s.state, s, record, book, book.family_file.bases[hardened.basis]) for s in shared),
         hazards=tuple(family.hazards if record.hazards is None else record.hazards),
         is_group=labels.get("names", SHOP_BASIS) == GROUP_NAME,
         names_basis=file.bases.get(labels.get("names", SHOP_BASIS)),
@@ -252,9 +247,7 @@ def _resolve(
     )
 
 
-def _state(
-    key: str, state: StateRecord, record: MaterialRecord, book: MaterialBook, hb_basis: Basis | None
-) -> State:
+def _state(key: str, state: StateRecord, record: MaterialRecord, book: MaterialBook, hb_basis: Basis | None) -> State:
     family, hardened = book.families[record.family], book.family_file.hardened
     group = state.group or family.groups[0]
     chip, traits = record.chip or family.chip, family.traits if record.traits is None else record.traits

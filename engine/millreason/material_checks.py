@@ -38,22 +38,16 @@ def check_record(
         findings.append(document.finding((*key, "states"), "is empty. Give a state with its hardness."))
     for state_name, state in record.states.items():
         findings += _check_state(document, (*key, "states", state_name), state, book)
-        findings += _unknown(
-            document, (*key, "states", state_name), state_name, book.words.states, "words.yaml"
-        )
+        findings += _unknown(document, (*key, "states", state_name), state_name, book.words.states, "words.yaml")
     return findings
 
 
-def _unknown(
-    document: Document, key: Key, word: str, known: Collection[str], where: str
-) -> Iterator[Finding]:
+def _unknown(document: Document, key: Key, word: str, known: Collection[str], where: str) -> Iterator[Finding]:
     if word not in known:
         yield document.finding(key, f"{word!r} is not in {where}.{did_you_mean(word, known)}")
 
 
-def _record_labels(
-    document: Document, key: Key, record: MaterialRecord, book: MaterialBook
-) -> Iterator[Finding]:
+def _record_labels(document: Document, key: Key, record: MaterialRecord, book: MaterialBook) -> Iterator[Finding]:
     yield from _unknown(document, (*key, "family"), record.family, book.families, "families.yaml")
     if record.speed is not None:
         yield from _unknown(document, (*key, "speed"), record.speed, book.speeds.runs, "speeds.yaml, runs")
@@ -89,9 +83,7 @@ def check_forces(
     for name, row in (file.rows if isinstance(file, ForceFile) else file.forces).items():
         key = ("rows" if shipped else "forces", name)
         if isinstance(file, ForceFile):
-            yield from _unknown(
-                document, (*key, "family"), row.family, file.families, "families of this file"
-            )
+            yield from _unknown(document, (*key, "family"), row.family, file.families, "families of this file")
         if row.follows is not None:
             yield from _unknown(document, (*key, "follows"), row.follows, hardness.runs, "hardness.yaml")
         nominal = row.kc11 * chip_mm**-row.mc

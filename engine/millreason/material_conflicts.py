@@ -37,16 +37,14 @@ def _word_contradictions(book: MaterialBook, result: Result) -> Iterator[Contrad
         return
     groups = book.groups(result.material)
     for words, allowed in result.said.general:
-        if not set(groups) & set(allowed):
+        # Nearly every iron and steel can be hard: the group H alone makes no two names agree.
+        meant = set(allowed) - {"H"} or set(allowed)
+        if not meant & set(groups):
             name = f"{result.material.name} is {book.family(result.material).name} (group {groups[0]})"
-            yield Contradiction(
-                "the name of the material", name, f"{words!r} means group {' or '.join(allowed)}"
-            )
+            yield Contradiction("the name of the material", name, f"{words!r} means group {' or '.join(allowed)}")
 
 
-def _group_contradictions(
-    book: MaterialBook, result: Result, iso_group: Group | None
-) -> Iterator[Contradiction]:
+def _group_contradictions(book: MaterialBook, result: Result, iso_group: Group | None) -> Iterator[Contradiction]:
     if iso_group is None:
         return
     if isinstance(result, Found):
@@ -61,9 +59,7 @@ def _group_contradictions(
         yield Contradiction("the ISO 513 group", name, f"the group given is {iso_group}")
 
 
-def _hardness_contradictions(
-    book: MaterialBook, found: Found, given: float | None
-) -> Iterator[Contradiction]:
+def _hardness_contradictions(book: MaterialBook, found: Found, given: float | None) -> Iterator[Contradiction]:
     said = found.hardness_hb
     margin = book.family_file.figures_margin
     if said is not None and given is not None and abs(said - given) > margin * max(said, given):
@@ -89,9 +85,7 @@ def _range_contradiction(book: MaterialBook, found: Found, hb: float) -> Iterato
     if not pool and "hardened" in named:
         pool = [state for state in states if state.group == "H"]
     pool = pool or _reachable(found, states)
-    if pool and all(
-        state.distance(hb) > book.family_file.range_margin * _near_end(state, hb) for state in pool
-    ):
+    if pool and all(state.distance(hb) > book.family_file.range_margin * _near_end(state, hb) for state in pool):
         nearest = min(pool, key=lambda state: state.distance(hb))
         span = f"{nearest.hb_min:g} to {nearest.hb_max:g} HB"
         place = f"{found.material.name}, {nearest.id.replace('_', ' ')}: {span}"

@@ -33,9 +33,7 @@ class SpeedPick:
     notes: tuple[str, ...] = ()
 
 
-def facts_of_state(
-    book: MaterialBook, material: Material, state: State, hb: float | None
-) -> list[MaterialFact]:
+def facts_of_state(book: MaterialBook, material: Material, state: State, hb: float | None) -> list[MaterialFact]:
     """Return every fact of a material; without a hardness the middle of the state's range holds."""
     family, bases = book.family(material), book.family_file.bases
     traits = bases[book.family_file.basis_of["traits"]]
@@ -61,9 +59,7 @@ def _group_basis(book: MaterialBook, state: State) -> Basis:
 def _level_basis(book: MaterialBook, state: State) -> Basis:
     row, _ = book.forces[state.force]
     whose = "the alloy's own" if state.own_force else "its group's only"
-    return Basis(
-        derived=f"force is {whose} ({row.for_}, {row.type}); speed and feed are always those of a group"
-    )
+    return Basis(derived=f"force is {whose} ({row.for_}, {row.type}); speed and feed are always those of a group")
 
 
 def _force_facts(book: MaterialBook, state: State, hb: float | None) -> Iterator[MaterialFact]:
@@ -108,7 +104,7 @@ def notes_of_state(book: MaterialBook, material: Material, state: State, hb: flo
         *speed_pick(book, state, hb).notes,
         material.note,
     )
-    return tuple(text for text in texts if text)
+    return tuple(dict.fromkeys(text for text in texts if text))
 
 
 def _speed_facts(book: MaterialBook, state: State, hb: float | None) -> Iterator[MaterialFact]:

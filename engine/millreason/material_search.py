@@ -2,17 +2,21 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator, Sequence
-from dataclasses import dataclass, field, replace
-from typing import Literal
-
-from rapidfuzz import fuzz, process
-from rapidfuzz.distance import Levenshtein
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass, replace
 
 from millreason.errors import OutOfRangeError
 from millreason.hardness import Converted, hardness_as_hb
 from millreason.material_book import Material, MaterialBook, State
-from millreason.material_records import FormWords, GeneralWords, Group, OutsideWords
+from millreason.material_index import (
+    GROUP_RANK,
+    NEAR_RANK,
+    Index,
+    Rank,
+    near_names,
+    slip_of,
+)
+from millreason.material_records import Group
 from millreason.material_text import (
     Reading,
     Token,
@@ -20,17 +24,11 @@ from millreason.material_text import (
     join,
     key_of,
     leave_sizes_out,
-    skeleton,
     take_hardness,
     tokens_of,
 )
 
 LONGEST_PHRASE = 9
-SHORT_KEY = 2  # keys this short are words of the shop as often as grades
-NEAR_SHOWN = 5
-
-# How surely a name means its entry: a designation, a trade word, a near equivalent, a word for a group.
-Rank = Literal[0, 1, 2, 3]
 
 
 @dataclass(frozen=True)
@@ -41,20 +39,6 @@ class NameHit:
     rank: Rank
     said: str
     slip_of: str = ""
-
-
-@dataclass
-class Index:
-    """All phrases by key."""
-
-    names: dict[str, list[tuple[Material, Rank, str]]] = field(default_factory=dict)
-    states: dict[str, list[str]] = field(default_factory=dict)
-    forms: dict[str, FormWords] = field(default_factory=dict)
-    general: dict[str, GeneralWords] = field(default_factory=dict)
-    outside: dict[str, OutsideWords] = field(default_factory=dict)
-    fillers: frozenset[str] = frozenset()
-    by_digits: dict[str, list[str]] = field(default_factory=dict)
-    by_skeleton: dict[str, str] = field(default_factory=dict)
 
 
 @dataclass(frozen=True)
@@ -88,6 +72,7 @@ class Found:
     said: Said
     hardness: Converted | None = None
     doubts: tuple[str, ...] = ()
+    state_said: bool = False
 
     @property
     def hardness_hb(self) -> float | None:
@@ -117,39 +102,6 @@ class Unknown:
 Result = Found | Ambiguous | Unknown
 
 
-def build_index(book: MaterialBook) -> Index:
-    """Build the index of all names and words of the book."""
-    index = Index(fillers=frozenset(key_of(word) for word in book.words.fillers))
-    for material in book.materials.values():
-        for system, names in material.names.items():
-            for name in names:
-                _add_name(index, material, system, name)
-    for state, words in book.words.states.items():
-        for word in words:
-            index.states.setdefault(key_of(word), []).append(state)
-    index.forms = {key_of(word): entry for entry in book.words.forms for word in entry.words}
-    index.general = {key_of(word): entry for entry in book.words.general for word in entry.words}
-    index.outside = {key_of(word): entry for entry in book.words.outside for word in entry.words}
-    for key in (*index.names, *index.general):
-        index.by_digits.setdefault(digits_of(key), []).append(key)
-        index.by_skeleton.setdefault(skeleton(key), key)
-    return index
-
-
-def _add_name(index: Index, material: Material, system: str, name: str) -> None:
-    key = key_of(name)
-    rank: Rank = 0
-    if material.is_group:
-        rank = 3
-    elif system == "near":
-        rank = 2
-    elif len(key) <= SHORT_KEY or not digits_of(key):
-        rank = 1
-    entries = index.names.setdefault(key, [])
-    if all(known is not material for known, _, _ in entries):
-        entries.append((material, rank, name))
-
-
 def find_material(
     book: MaterialBook, text: str, iso_group: Group | None = None, hardness_hb: float | None = None
 ) -> Result:
@@ -168,7 +120,7 @@ def find_material(
     entries = tuple({hit.material.id: hit.material for hit in best}.values())
     outside = [index.outside[key_of(word)] for word in said.ignored if key_of(word) in index.outside]
     if len(entries) > 1:
-        entries = _narrowed(book, entries, iso_group, hardness_hb)
+        entries = _narrowed(book, entries, said, iso_group, hardness_hb)
     if len(entries) == 1:
         return _found(book, entries[0], best, said, hardness_hb)
     if entries:
@@ -177,7 +129,7 @@ def find_material(
         return Unknown((), outside[0].why, said)
     if said.general:
         return _general(book, index, said)
-    return Unknown(_near(index, said), "No material of this name is known.", said)
+    return Unknown(near_names(index, _wanted(said)), "No material of this name is known.", said)
 
 
 def _spans(tokens: Sequence[Token | None]) -> Iterator[tuple[int, int, str]]:
@@ -199,12 +151,12 @@ def _name_hits(index: Index, text: str) -> tuple[list[NameHit], list[Token | Non
     """Take names out of the text; words for a whole group wait until nothing better is found."""
     left: list[Token | None] = list(tokens_of(text))
     hits: list[NameHit] = []
-    for worst in (2, 3):
+    for worst in (NEAR_RANK, GROUP_RANK):
         for start, end, key in list(_spans(left)):
             if any(token is None for token in left[start:end]):
                 continue
             entries = [entry for entry in index.names.get(key, ()) if entry[1] <= worst]
-            if not entries or _longer_word(index, left, start, end):
+            if not entries or _part_of_more(index, text, left, start, end):
                 continue
             said = _words(text, left[start:end])
             hits += [NameHit(material, rank, said) for material, rank, _ in entries]
@@ -214,19 +166,18 @@ def _name_hits(index: Index, text: str) -> tuple[list[NameHit], list[Token | Non
     return hits, left
 
 
-def _longer_word(index: Index, left: Sequence[Token | None], start: int, end: int) -> bool:
-    """Say whether a name without digits is only part of a longer word of the trade."""
+def _part_of_more(index: Index, text: str, left: Sequence[Token | None], start: int, end: int) -> bool:
+    """Say whether a name without digits is only part of a longer word, or of a grade that is not known."""
     if any(token and digits_of(token.key) for token in left[start:end]):
         return False
-    for begin, stop, key in _spans(left):
-        if (
-            begin <= start
-            and stop >= end
-            and stop - begin > end - start
-            and (key in index.forms or key in index.general)
-        ):
-            return True
-    return False
+    last, following = left[end - 1], left[end] if end < len(left) else None
+    if last and following and following.key.isdigit() and not text[last.end : following.start].strip("-"):
+        return " " not in text[last.end : following.start]
+    return any(
+        begin <= start and stop >= end and stop - begin > end - start
+        for begin, stop, key in _spans(left)
+        if key in index.forms or key in index.general
+    )
 
 
 def _words_said(index: Index, text: str, left: list[Token | None], hits: Sequence[NameHit]) -> Said:
@@ -246,9 +197,7 @@ def _words_said(index: Index, text: str, left: list[Token | None], hits: Sequenc
             general.append((words, tuple(index.general[key].groups)))
         if key in index.states or key in index.forms or key in index.general:
             left[start:end] = [None] * (end - start)
-    ignored = tuple(
-        _words(text, [token]) for token in left if token is not None and token.key not in index.fillers
-    )
+    ignored = tuple(_words(text, [token]) for token in left if token is not None and token.key not in index.fillers)
     matched = tuple(dict.fromkeys(hit.said for hit in hits))
     return Said("", matched, ignored, tuple(hints), tuple(states), tuple(general))
 
@@ -258,7 +207,7 @@ def _slips(index: Index, said: Said) -> tuple[list[NameHit], Said]:
     text = " ".join(said.ignored)
     tokens: list[Token | None] = list(tokens_of(text))
     for start, end, key in _spans(tokens):
-        meant = None if key in index.outside else _slip(index, key)
+        meant = None if key in index.outside else slip_of(index, key)
         if meant is None:
             continue
         words = _words(text, tokens[start:end])
@@ -266,30 +215,8 @@ def _slips(index: Index, said: Said) -> tuple[list[NameHit], Said]:
         if meant in index.names:
             hits = [NameHit(material, rank, words, name) for material, rank, name in index.names[meant]]
             return hits, replace(said, matched=(words,), ignored=ignored)
-        return [], replace(
-            said, general=(*said.general, (words, tuple(index.general[meant].groups))), ignored=ignored
-        )
+        return [], replace(said, general=(*said.general, (words, tuple(index.general[meant].groups))), ignored=ignored)
     return [], said
-
-
-def _slip(index: Index, key: str) -> str | None:
-    alike = index.by_skeleton.get(skeleton(key))
-    if alike is not None and len(key) >= 4 and not key.isdigit():
-        return alike
-    letters = len(key) - len(digits_of(key))
-    if letters < 3 or len(key) < 5:
-        return None
-    allowed = 1 if len(key) < 8 else 2
-    known = index.by_digits.get(digits_of(key), ())
-    best = process.extract(key, known, scorer=Levenshtein.distance, score_cutoff=allowed, limit=2)
-    if not best or (len(best) > 1 and best[0][1] == best[1][1] and not _same(index, best[0][0], best[1][0])):
-        return None
-    return str(best[0][0])
-
-
-def _same(index: Index, first: str, second: str) -> bool:
-    both = [{entry[0].id for entry in index.names.get(key, ())} for key in (first, second)]
-    return bool(both[0]) and both[0] == both[1]
 
 
 def _best(book: MaterialBook, hits: Sequence[NameHit], said: Said) -> tuple[list[NameHit], Said]:
@@ -300,18 +227,19 @@ def _best(book: MaterialBook, hits: Sequence[NameHit], said: Said) -> tuple[list
     best = [hit for hit in hits if hit.rank == surest]
     ids = {hit.material.id for hit in best}
     demoted = [
-        (hit.said, book.groups(hit.material))
-        for hit in hits
-        if hit.rank != surest and hit.material.id not in ids
+        (hit.said, book.groups(hit.material)) for hit in hits if hit.rank != surest and hit.material.id not in ids
     ]
     kept = {hit.said for hit in best}
     return best, replace(said, general=(*said.general, *(word for word in demoted if word[0] not in kept)))
 
 
 def _narrowed(
-    book: MaterialBook, entries: tuple[Material, ...], iso_group: Group | None, hb: float | None
+    book: MaterialBook, entries: tuple[Material, ...], said: Said, iso_group: Group | None, hb: float | None
 ) -> tuple[Material, ...]:
+    """Let a group, a word for a group or a hardness settle a choice, if it leaves just one."""
     fits = [entry for entry in entries if iso_group is None or iso_group in book.groups(entry)]
+    for _, allowed in said.general:
+        fits = [entry for entry in fits if set(book.family(entry).groups) & set(allowed)]
     if hb is not None:
         fits = [entry for entry in fits if any(state.distance(hb) == 0 for state in entry.states)]
     return tuple(fits) if len(fits) == 1 else entries
@@ -324,7 +252,7 @@ def _found(
     hit = next(hit for hit in hits if hit.material is material)
     if hit.slip_of:
         doubts.append(f"{hit.said!r} is read as {hit.slip_of!r}.")
-    if hit.rank == 2:
+    if hit.rank == NEAR_RANK:
         doubts.append(f"{hit.said!r} is near to {material.name}, not the same grade; its data are taken.")
     if material.is_group:
         doubts.append(f"{hit.said!r} names a group, not a grade; its usual values are taken.")
@@ -338,18 +266,12 @@ def _found(
             doubts.append(f"{said.reading.said!r} is left aside: {problem}")
     hb = hardness_hb if hardness_hb is not None else hardness.value if hardness else None
     named = [name for _, names in said.state_words for name in names]
-    named += [
-        state
-        for name, state in material.state_names.items()
-        if key_of(name) == key_of(hit.slip_of or hit.said)
-    ]
+    named += [state for name, state in material.state_names.items() if key_of(name) == key_of(hit.slip_of or hit.said)]
     state, doubt = choose_state(book, material, named, hb)
-    return Found(material, state, said, hardness, (*doubts, *([doubt] if doubt else [])))
+    return Found(material, state, said, hardness, (*doubts, *([doubt] if doubt else [])), state.id in named)
 
 
-def choose_state(
-    book: MaterialBook, material: Material, named: Sequence[str], hb: float | None
-) -> tuple[State, str]:
+def choose_state(book: MaterialBook, material: Material, named: Sequence[str], hb: float | None) -> tuple[State, str]:
     """Return the state that words and hardness point to, and a doubt where neither settles it.
 
     From the hardness at which steel counts as hardened only hardened states count, below it only the others.
@@ -396,29 +318,13 @@ def _several(entries: Sequence[Material], hits: Sequence[NameHit], said: Said) -
 def _general(book: MaterialBook, index: Index, said: Said) -> Ambiguous:
     # The longest phrase says most: 'stainless steel' before 'steel'.
     word = max((words for words, _ in said.general), key=lambda words: len(key_of(words)))
-    entry = index.general.get(key_of(word)) or index.general[_slip(index, key_of(word)) or ""]
+    entry = index.general.get(key_of(word)) or index.general[slip_of(index, key_of(word)) or ""]
     candidates = tuple(book.materials[name] for name in entry.such_as)
     return Ambiguous(
         candidates, f"{word!r} names a whole group; speed and force differ widely inside it.", entry.ask, said
     )
 
 
-def _near(index: Index, said: Said) -> tuple[str, ...]:
-    wanted = join([token.key for word in said.ignored for token in tokens_of(word)]) or key_of(said.text)
-    if not wanted:
-        return ()
-    ranked = process.extract(
-        wanted, list(index.names), scorer=fuzz.ratio, limit=4 * NEAR_SHOWN, score_cutoff=60
-    )
-    shown = dict.fromkeys(_shown(index, key) for key, _, _ in ranked)
-    return tuple(list(shown)[:NEAR_SHOWN])
-
-
-def _shown(index: Index, key: str) -> str:
-    material, _, name = index.names[key][0]
-    return name if name == material.name else f"{name} ({material.name})"
-
-
-def all_names(materials: Iterable[Material]) -> list[str]:
-    """Return every exact name of the materials."""
-    return [name for material in materials for name in material.exact_names]
+def _wanted(said: Said) -> str:
+    """Return the key of what nothing knew, or of the whole text."""
+    return join([token.key for word in said.ignored for token in tokens_of(word)]) or key_of(said.text)

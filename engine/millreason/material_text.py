@@ -20,7 +20,7 @@ _SCALES: dict[str, Scale] = {"h": "hb", "b": "hb", "r": "hrc", "m": "mpa", "n": 
 _SIZES = re.compile(
     rf"""(?<![\w.])(?:
         {_NUMBER}(?:\s*(?:mm|in)?\s*[x\u00d7*]\s*{_NUMBER}){{1,3}}\s*(?:mm|cm|m|in)?(?!\w)
-      | {_NUMBER}\s*(?:mm|cm|inch(?:es)?|kg|lbs?|off|pcs|pieces|parts|deg|°|um|µm|ksi|bar)(?!\w)
+      | {_NUMBER}\s*(?:mm|cm|inch(?:es)?|kg|lbs?|off|pcs|pieces|parts|deg|°|um|µm|ksi)(?!\w)
       | {_NUMBER}\s*["”″]
       | (?:\d{{1,2}}(?:\.\d+)?|\d+[ -]\d+/\d+|\d+/\d+|\.\d+)\s*(?:in|inch|")(?!\w)
       | (?:ø|dia\.?|thk|qty|thickness|t\s*=)\s*[=:]?\s*{_NUMBER}(?![\w.])

@@ -127,9 +127,7 @@ class Materials(MaterialBook):
         result.contradictions += [str(one) for one in find_contradictions(self, found, iso_group, hb)]
         return result
 
-    def _in_brinell(
-        self, hardness: tuple[float, str] | None, found: Result, result: LookUp
-    ) -> Converted | None:
+    def _in_brinell(self, hardness: tuple[float, str] | None, found: Result, result: LookUp) -> Converted | None:
         """Add the given hardness in Brinell; what a table does not cover becomes a note."""
         if hardness is None:
             return None
@@ -164,14 +162,14 @@ class Materials(MaterialBook):
             result.facts.append(LookUpFact(name, value, by, said, basis, from_shop=material.from_shop))
         if hb is None:
             result.facts += self._open_facts(found, by)
-        result.facts += self._rockwell(material, state.hb_typical if hb is None else hb)
+        if not any(fact.name == "work.hardness_hrc" for fact in result.facts):
+            result.facts += self._rockwell(material, state.hb_typical if hb is None else hb)
         result.notes += [*found.doubts, *notes_of_state(self, material, state, hb)]
 
     def _open_facts(self, found: Found, by: str) -> Iterator[LookUpFact]:
         """Yield what stays open while no hardness is known: its range, and how far start speeds differ."""
         state, shop = found.state, found.material.from_shop
-        named = {name for _, names in found.said.state_words for name in names}
-        states = [state] if state.id in named else list(found.material.states)
+        states = [state] if found.state_said else list(found.material.states)
         for name, value in (("low", state.hb_min), ("high", state.hb_max)):
             yield LookUpFact(f"material.hardness_{name}_hb", value, by, "", state.hb_basis, from_shop=shop)
         yield self._spread(states, by)
@@ -205,16 +203,13 @@ class Materials(MaterialBook):
         return [
             material
             for material in self.materials.values()
-            if (group is None or group in self.groups(material))
-            and (family is None or material.family == family)
+            if (group is None or group in self.groups(material)) and (family is None or material.family == family)
         ]
 
     def search(self, text: str) -> list[Material]:
         """Return the entries with a name, family or id that holds the text."""
         wanted = key_of(text)
-        return [
-            entry for entry in self.entries() if wanted and any(wanted in key for key in self._keys(entry))
-        ]
+        return [entry for entry in self.entries() if wanted and any(wanted in key for key in self._keys(entry))]
 
     def _keys(self, material: Material) -> Iterator[str]:
         names = [name for part in material.names.values() for name in part]
@@ -223,8 +218,7 @@ class Materials(MaterialBook):
     def show(self, material: Material) -> list[MaterialFact]:
         """Return everything held on one entry, state by state, each value with its basis."""
         facts: list[MaterialFact] = [
-            MaterialFact(f"names.{system}", names, material.names_basis)
-            for system, names in material.names.items()
+            MaterialFact(f"names.{system}", names, material.names_basis) for system, names in material.names.items()
         ]
         for state in (*material.states, *material.shared_states):
             span = (state.hb_min, state.hb_max)
@@ -263,9 +257,7 @@ def _blank_facts(hints: tuple[Hint, ...]) -> list[LookUpFact]:
     raw = [_SKIN_WORDS[hint.skin] for hint in hints if hint.skin in _SKIN_WORDS]
     raw += [hint.form for hint in hints if hint.form == "die_casting"]
     # Skins for which there is no word of their own are stated outright.
-    skins = tuple(
-        hint.skin for hint in hints if hint.skin and hint.skin != "none" and hint.skin not in _SKIN_WORDS
-    )
+    skins = tuple(hint.skin for hint in hints if hint.skin and hint.skin != "none" and hint.skin not in _SKIN_WORDS)
     values = {
         "work.form_words": forms,
         "work.skin_words": tuple(dict.fromkeys(raw)) or ("none",),
