@@ -23,7 +23,8 @@ from millreason.trace import (
 )
 
 if TYPE_CHECKING:
-    from millreason.choice import Adviser, Outcome, Tried
+    from millreason.choice import Adviser
+    from millreason.outcome import Outcome, Tried
 
 MOST_QUESTIONS = 6
 MOST_CANDIDATES_SHOWN = 12
@@ -83,7 +84,11 @@ def _summary(out: Outcome, verdict: Verdict, chosen: Tried | None) -> str:
     if verdict == "refuse":
         return "No cutter does this job within the limits; see which limits bind and what would open a way."
     assert chosen is not None
-    words = chosen.candidate.label[0].lower() + chosen.candidate.label[1:] if chosen.candidate.label[0] != "D" else chosen.candidate.label
+    words = (
+        chosen.candidate.label[0].lower() + chosen.candidate.label[1:]
+        if chosen.candidate.label[0] != "D"
+        else chosen.candidate.label
+    )
     if verdict == "conditional":
         return f"{words}: held back until the conditions are confirmed; no cutting data before that."
     layout = chosen.plan.layout
@@ -182,13 +187,22 @@ def _trace(adviser: Adviser, out: Outcome, chosen: Tried | None, held: bool) -> 
     candidates = []
     if chosen is not None:
         place = next((number for number, firing in enumerate(firings) if firing.stage == "caution"), len(firings))
-        firings[place:place] = list(chosen.firings)
+        judge = adviser.stages["judge"]
+        label = chosen.candidate.label
+        firings[place:place] = [judge.record(f, chosen.situation, out.job.units, label) for f in chosen.firings]
         if not held:
             candidates.append(_candidate(chosen, "chosen"))
             candidates.extend(_candidate(tried, "stands") for tried in out.stands[1:MOST_CANDIDATES_SHOWN])
     if not held:
         candidates.extend(_candidate(tried, "rejected") for tried in out.rejected[:MOST_CANDIDATES_SHOWN])
-    names = {} if chosen is None else {**{k.removeprefix("pick."): _name(v) for k, v in chosen.facts.items() if k.startswith("pick.")}, **out.separate}
+    names = (
+        {}
+        if chosen is None
+        else {
+            **{k.removeprefix("pick."): _name(v) for k, v in chosen.facts.items() if k.startswith("pick.")},
+            **out.separate,
+        }
+    )
     if chosen is not None:
         names["diameter_mm"] = f"{chosen.candidate.size.nominal_mm:g}"
     ledgers = out.ledgers.records(names) if out.ledgers else []

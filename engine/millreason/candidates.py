@@ -1,4 +1,4 @@
-"""Complete tools in the order of what speaks for them: every combination of body, size, pitch, rake, corner and wiper."""
+"""Complete tools in the order of what speaks for them: body, size, pitch, rake, corner and wiper in every combination."""
 
 from __future__ import annotations
 
@@ -62,6 +62,23 @@ class Candidate:
         return self.family.outermost_mm(self.size)
 
     @property
+    def options(self) -> dict[str, str]:
+        """The option of every pick, as the ledgers name it."""
+        return {
+            "cutter_class": self.family.cutter_class,
+            "kappa_deg": kappa_key(self.family.kappa_deg),
+            "diameter_mm": size_key(self.size.nominal_mm),
+            "pitch": self.pitch,
+            "rake": self.rake.rake,
+            "edge": self.edge,
+            "corner": self.corner.corner,
+            "wiper": self.wiper,
+            "pockets": self.pockets,
+            "mounting": self.mounting,
+            **({"cutter": self.own.id} if self.own else {}),
+        }
+
+    @property
     def label(self) -> str:
         """Short name for lists: '80 z6 fine, face mill 45°, positive negative, facet'."""
         angle = "round inserts" if self.is_round else f"kappa {self.family.kappa_deg:g}"
@@ -109,9 +126,7 @@ class Ledgers:
         result = []
         for pick, options in self._evidence.items():
             lines = [
-                OptionLedger(
-                    option, self.balance(pick, option), bool(self.ruled_out(pick, option)), list(evidence)
-                )
+                OptionLedger(option, self.balance(pick, option), bool(self.ruled_out(pick, option)), list(evidence))
                 for option, evidence in options.items()
             ]
             lines.sort(key=lambda line: (line.ruled_out, -line.balance))
@@ -161,9 +176,7 @@ class Catalogue:
 
     def best_first(self) -> Iterator[Candidate]:
         """Yield every candidate whose parts are not ruled out, best evidence first."""
-        lanes = [
-            lane for place, family in enumerate(self._cutters.families) if (lane := self._lane(place, family))
-        ]
+        lanes = [lane for place, family in enumerate(self._cutters.families) if (lane := self._lane(place, family))]
         heap = [(-lane.score(0, 0), lane.place, 0, 0) for lane in lanes]
         by_place = {lane.place: lane for lane in lanes}
         heapq.heapify(heap)
@@ -217,9 +230,7 @@ class Catalogue:
         wipers = self._open("wiper", ("none", "one", "all") if family.wipers else ("none",))
         pitches = self._open("pitch", family.pitches)
         corners = [
-            (score, corner)
-            for corner in family.corners
-            if (score := self._score("corner", corner.corner)) is not None
+            (score, corner) for corner in family.corners if (score := self._score("corner", corner.corner)) is not None
         ]
         rakes = [
             (rake_score + edge_score, rake, edge)
@@ -237,9 +248,7 @@ class Catalogue:
         key = family.id, size.label
         if key not in self._mounting_of:
             made = dict.fromkeys(row.mounting for row in self._cutters.mountings_for(family, size))
-            fits = [
-                name for name in made if name in self._interface_mountings and self._wanted("mounting", name)
-            ]
+            fits = [name for name in made if name in self._interface_mountings and self._wanted("mounting", name)]
             self._mounting_of[key] = self._ledgers.best("mounting", fits)
         return self._mounting_of[key]
 
@@ -255,7 +264,8 @@ class Catalogue:
         land = max(family.wipers.lands_mm) if family.wipers and parts.wiper != "none" else 0.0
         score = lane.score(row, column)
         return Candidate(
-            family, size, parts.pitch, teeth, parts.rake, parts.edge, parts.corner, parts.wiper, land, pockets, mounting, score
+            family, size, parts.pitch, teeth, parts.rake, parts.edge, parts.corner, parts.wiper, land,
+            pockets, mounting, score,
         )  # fmt: skip
 
 

@@ -3,12 +3,13 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Literal
 
 from millreason.trace import Check
 
 if TYPE_CHECKING:
-    from millreason.choice import Adviser, Outcome, Tried
+    from millreason.choice import Adviser
+    from millreason.outcome import Outcome, Tried
 
 NEAR = 0.85
 # Name, key, the use as a plan fact, value and limit as facts (or a plan fact and nothing), unit, and the formula behind.
@@ -38,10 +39,31 @@ def make_checks(adviser: Adviser, out: Outcome, chosen: Tried) -> list[Check]:
 def _power(adviser: Adviser, out: Outcome, chosen: Tried) -> Iterator[Check]:
     wear = adviser.knowledge.practice["wear_factor"].number
     load = chosen.plan.heaviest
-    yield _check("net power, sharp edges", "power", load.net_power_kw, load.available_kw, "kW", "cutting_force.net_power")
-    yield _check("net power, worn edges", "power_worn", load.net_power_kw * wear, load.available_kw, "kW", "cutting_force.net_power")
+    yield _check(
+        "net power, sharp edges",
+        "power",
+        load.net_power_kw,
+        load.available_kw,
+        "kW",
+        "cutting_force.net_power",
+    )
+    yield _check(
+        "net power, worn edges",
+        "power_worn",
+        load.net_power_kw * wear,
+        load.available_kw,
+        "kW",
+        "cutting_force.net_power",
+    )
     torque = load.torque_nm * load.available_kw / load.net_power_kw
-    yield _check("mean torque, worn edges", "torque", load.torque_nm * wear, torque, "N.m", "cutting_force.torque_from_power")
+    yield _check(
+        "mean torque, worn edges",
+        "torque",
+        load.torque_nm * wear,
+        torque,
+        "N.m",
+        "cutting_force.torque_from_power",
+    )
     assert out.spindle is not None
     fastest = max(entry.spindle_speed_rpm for entry in chosen.plan.loads)
     yield _check("spindle speed", "speed", fastest, out.spindle.speed_max_rpm, "rpm", "motion.spindle_speed")
@@ -51,8 +73,16 @@ def _chip(out: Outcome, chosen: Tried) -> Iterator[Check]:
     thinnest = min(load.hex_mm for load in chosen.plan.loads)
     least = chosen.plan.hex_least_mm
     use = least / thinnest
-    verdict = "ok" if use <= NEAR else "near" if use <= 1 + 1e-9 else "over"
-    yield Check("chip thickness above the least", "chip_least", thinnest, least, "mm", use * 100, verdict, "chip.maximum_chip_thickness")  # type: ignore[arg-type]
+    yield Check(
+        "chip thickness above the least",
+        "chip_least",
+        thinnest,
+        least,
+        "mm",
+        use * 100,
+        _verdict(use),
+        "chip.maximum_chip_thickness",
+    )
 
 
 def _from_facts(adviser: Adviser, out: Outcome, chosen: Tried) -> Iterator[Check]:
@@ -64,7 +94,11 @@ def _from_facts(adviser: Adviser, out: Outcome, chosen: Tried) -> Iterator[Check
 
     for name, key, use_fact, value_fact, limit_fact, unit, by in _FROM_FACTS:
         if key == "width_to_diameter":
-            limit: float | None = practice["width_to_diameter_one_pass"].high if chosen.plan.layout.one_pass else practice["width_to_diameter_most"].number
+            limit: float | None = (
+                practice["width_to_diameter_one_pass"].high
+                if chosen.plan.layout.one_pass
+                else practice["width_to_diameter_most"].number
+            )
             use = (known(value_fact) or 0.0) / (limit or 1.0)
         else:
             found = known(use_fact)
@@ -84,7 +118,7 @@ def _check(name: str, key: str, value: float, limit: float, unit: str, by: str) 
     return Check(name, key, value, limit, unit, use * 100, _verdict(use), by)
 
 
-def _verdict(use: float) -> str:  # type: ignore[return]
+def _verdict(use: float) -> Literal["ok", "near", "over"]:
     return "ok" if use <= NEAR else "near" if use <= 1 + 1e-9 else "over"
 
 
@@ -99,7 +133,9 @@ def robustness(adviser: Adviser, out: Outcome, chosen: Tried) -> str:
     worst = nominal * high * wear
     words = f"Power takes {nominal * low * 100:.0f} to {nominal * high * 100:.0f}% of what the spindle has over the band of the force data with sharp edges"
     if worst <= 1:
-        return f"{words}, and {worst * 100:.0f}% at the upper end with worn edges: the choice holds over the whole band."
+        return (
+            f"{words}, and {worst * 100:.0f}% at the upper end with worn edges: the choice holds over the whole band."
+        )
     if nominal * wear <= 1:
         return f"{words}; worn edges at the upper end would take {worst * 100:.0f}%: change edges early or cut lighter if the material turns out hard."
     return f"{words}; worn edges already take {nominal * wear * 100:.0f}%: there is no reserve."

@@ -2,13 +2,12 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping
-from dataclasses import dataclass, field
+from collections.abc import Mapping
 from functools import cache, cached_property
 from pathlib import Path
 from typing import Any
 
-from millreason.candidates import Candidate, Catalogue, Ledgers, kappa_key, size_key
+from millreason.candidates import Ledgers, kappa_key, size_key
 from millreason.facts import Situation, basis_record
 from millreason.inference import Firing
 from millreason.job import Job, read_job
@@ -16,12 +15,12 @@ from millreason.knowledge import Knowledge, load_knowledge
 from millreason.limits import binding_limits
 from millreason.lookups import complete_situation, first_situation, look_up_usual, size_facts, unit_doubts
 from millreason.materials import Materials, load_materials
-from millreason.measures import BODY_FACTS, CUT_FACTS, Meter
-from millreason.own_cutters import own_candidates, own_cutters
-from millreason.plan import Plan, Planner
-from millreason.rulebook import Conclusion, RejectSpec, RuleBook, load_rules
+from millreason.outcome import Outcome
+from millreason.own_cutters import own_cutters
+from millreason.rulebook import Conclusion, RuleBook, load_rules
+from millreason.search import Search
 from millreason.spindle import Spindle, spindle_of
-from millreason.stages import Stage, Tuning, fill, plain_value
+from millreason.stages import Stage, Tuning, fill
 from millreason.trace import Answer, Evidence, FiringRecord, LimitRecord, Question
 from millreason.vocabulary import Vocabulary, load_vocabulary
 
@@ -31,58 +30,17 @@ EXTRA_TRIES = 12
 _STAGES = ("assume", "appraise", "weigh", "size", "judge", "caution")
 
 
-@dataclass(frozen=True)
-class Tried:
-    """One candidate with its plan, what the judging rules said and where it stands."""
-
-    candidate: Candidate
-    plan: Plan
-    facts: Mapping[str, Any]
-    limits: tuple[LimitRecord, ...]
-    lowered: float
-    reasons: tuple[str, ...]
-    firings: tuple[FiringRecord, ...]
-
-    @property
-    def standing(self) -> float:
-        """Evidence less what the judging rules took off."""
-        return self.candidate.evidence - self.lowered
-
-
-@dataclass
-class Outcome:
-    """Everything a choice has found, from which the answer is written."""
-
-    job: Job
-    situation: Situation
-    tuning: Tuning
-    firings: list[FiringRecord] = field(default_factory=list)
-    questions: dict[str, Question] = field(default_factory=dict)
-    conditions: dict[str, Question] = field(default_factory=dict)
-    contradictions: list[str] = field(default_factory=list)
-    notes: list[str] = field(default_factory=list)
-    unit_doubts: list[str] = field(default_factory=list)
-    ledgers: Ledgers | None = None
-    separate: dict[str, str] = field(default_factory=dict)
-    stands: list[Tried] = field(default_factory=list)
-    rejected: list[Tried] = field(default_factory=list)
-    limits: list[LimitRecord] = field(default_factory=list)
-    excluded: list[LimitRecord] = field(default_factory=list)
-    cautions: list[tuple[FiringRecord, Conclusion]] = field(default_factory=list)
-    candidates_possible: int = 0
-    meter: Meter | None = None
-    spindle: Spindle | None = None
-
-    @property
-    def must_ask(self) -> bool:
-        """Whether a question is open without which nothing can be defended."""
-        return any(question.need == "must" for question in self.questions.values())
-
-
 class Adviser:
     """The program with its knowledge and rules loaded; it answers any number of jobs."""
 
-    def __init__(self, knowledge: Knowledge, materials: Materials, vocabulary: Vocabulary, rulebook: RuleBook, engine: str | None = None) -> None:
+    def __init__(
+        self,
+        knowledge: Knowledge,
+        materials: Materials,
+        vocabulary: Vocabulary,
+        rulebook: RuleBook,
+        engine: str | None = None,
+    ) -> None:
         self.knowledge = knowledge
         self.materials = materials
         self.vocabulary = vocabulary
@@ -105,9 +63,12 @@ class Adviser:
 
         return write_answer(self, self.decide(job))
 
-    def decide(self, job: Job) -> Outcome:
-        """Run the stages and the search for a job, without writing the answer."""
-        return _Run(self, job).outcome()
+    def decide(self, job: Job, only: Mapping[str, str] | None = None) -> Outcome:
+        """Run the stages and the search for a job, without writing the answer.
+
+        `only` keeps the search to candidates with the given options, such as {"pitch": "coarse"}.
+        """
+        return _Run(self, job).outcome(only or {})
 
     @cached_property
     def stages(self) -> Mapping[str, Stage]:
@@ -147,30 +108,44 @@ class _Run:
         first = first_situation(job, adviser.knowledge, adviser.materials, adviser.vocabulary)
         self._situation = first.situation
         tuning = Tuning({name: entry.how for name, entry in adviser.vocabulary.adjustables.items()}, {}, {})
-        self._out = Outcome(job, self._situation, tuning, contradictions=list(first.contradictions), notes=list(first.notes))
-        self._out.unit_doubts = unit_doubts(first.situation, adviser.vocabulary, self._practice["unit_doubt_factor"].number)
+        self._out = Outcome(
+            job, self._situation, tuning, contradictions=list(first.contradictions), notes=list(first.notes)
+        )
+        self._out.unit_doubts = unit_doubts(
+            first.situation, adviser.vocabulary, self._practice["unit_doubt_factor"].number
+        )
         if first.question is not None:
             self._out.questions[first.question.fact] = first.question
 
-    def outcome(self) -> Outcome:
+    def outcome(self, only: Mapping[str, str]) -> Outcome:
         out = self._out
         self._fill_gaps()
         complete_situation(self._situation, self._adviser.knowledge, self._adviser.vocabulary)
         self._appraise()
         if not out.must_ask and not out.limits and self._ready():
             self._weigh()
-            self._search()
+            self._search(only)
         self._caution()
         return out
 
     def _ready(self) -> bool:
         """Whether every number is there that a plan needs; what is not becomes a question."""
-        needed = ("work.width_mm", "work.length_mm", "work.stock_mm", "material.kc11_n_mm2", "machine.interface", "machine.power_kw", "machine.efficiency")
+        needed = (
+            "work.width_mm",
+            "work.length_mm",
+            "work.stock_mm",
+            "material.kc11_n_mm2",
+            "machine.interface",
+            "machine.power_kw",
+            "machine.efficiency",
+        )
         for fact in needed:
             if self._situation.value(fact) is None:
                 asked = "work.material" if fact.startswith("material.") else fact
                 self._question(asked, "must", "plan")
-        if self._situation.value("machine.speed_max_rpm") is None and not self._situation.value("machine.speed_steps_rpm"):
+        if self._situation.value("machine.speed_max_rpm") is None and not self._situation.value(
+            "machine.speed_steps_rpm"
+        ):
             self._question("machine.speed_max_rpm", "must", "plan")
         return not self._out.must_ask
 
@@ -216,7 +191,7 @@ class _Run:
             if then.condition:
                 self._out.conditions[then.condition] = self._make_question(then.condition, "must", firing.rule)
             if then.refuse:
-                self._out.limits.append(self._limit(stage, firing.rule, then.refuse, self._situation))
+                self._out.limits.append(stage.limit(firing.rule, then.refuse, self._situation, self._out.job.units))
 
     def _set(self, fact: str, value: Any, origin: Any, rule: str, stage: Stage) -> bool:
         definition = self._vocabulary.facts[fact]
@@ -239,7 +214,9 @@ class _Run:
     def _weigh(self) -> None:
         picks = self._vocabulary.picks
         out = self._out
-        out.ledgers = Ledgers({name: [_option(option) for option in pick.options] for name, pick in picks.items() if pick.options})
+        out.ledgers = Ledgers(
+            {name: [_option(option) for option in pick.options] for name, pick in picks.items() if pick.options}
+        )
         stage = self._adviser.stages["weigh"]
         for firing in stage.run(self._situation):
             record = self._record(stage, firing)
@@ -250,20 +227,37 @@ class _Run:
             best = out.ledgers.best(pick)
             if best is None:
                 rules = [e.rule for option in picks[pick].options for e in out.ledgers.ruled_out(pick, str(option))]
-                out.limits.append(LimitRecord("fluid" if pick == "fluid" else "process", f"every option of {pick} is ruled out", None, None, ", ".join(rules), []))
+                out.limits.append(
+                    LimitRecord(
+                        "fluid" if pick == "fluid" else "process",
+                        f"every option of {pick} is ruled out",
+                        None,
+                        None,
+                        ", ".join(rules),
+                        [],
+                    )
+                )
             else:
                 out.separate[pick] = best
 
     def _sizes(self) -> list[float]:
         """Return every diameter to weigh: the series in the person's units, and the cutters on hand."""
-        series = [size.nominal_mm for size in self._adviser.knowledge.cutters.sizes if size.series == self._out.job.units]
-        own = [float(value) for cutter in own_cutters(self._out.job, self._adviser.knowledge) if isinstance(value := cutter.values.get("diameter_mm"), int | float)]
+        series = [
+            size.nominal_mm for size in self._adviser.knowledge.cutters.sizes if size.series == self._out.job.units
+        ]
+        own = [
+            float(value)
+            for cutter in own_cutters(self._out.job, self._adviser.knowledge)
+            if isinstance(value := cutter.values.get("diameter_mm"), int | float)
+        ]
         return sorted({*series, *own})
 
     def _weigh_size(self, nominal_mm: float) -> None:
         stage = self._adviser.stages["size"]
         situation = self._situation.copy()
-        for name, value in size_facts(nominal_mm, self._situation, self._adviser.knowledge, self._out.tuning.values, self.spindle).items():
+        for name, value in size_facts(
+            nominal_mm, self._situation, self._adviser.knowledge, self._out.tuning.values, self.spindle
+        ).items():
             situation.set(name, value, "computed", "size")
         for firing in stage.run(situation):
             record = stage.record(firing, situation, self._out.job.units, f"D {nominal_mm:g}")
@@ -274,7 +268,7 @@ class _Run:
         assert self._out.ledgers is not None
         then = stage.rules[record.rule].then
         if then.limit:
-            self._out.excluded.append(self._limit(stage, record.rule, then.limit, situation))
+            self._out.excluded.append(stage.limit(record.rule, then.limit, situation, self._out.job.units))
         stance: Any = "for" if then.for_ else "against" if then.against else "rule_out"
         strength = then.strength or "rule_out"
         weight = self._adviser.knowledge.strengths[strength].weight if then.strength else 0.0
@@ -290,99 +284,23 @@ class _Run:
         """The machine's spindle."""
         return spindle_of(self._situation, self._practice)
 
-    def _search(self) -> None:
+    def _search(self, only: Mapping[str, str]) -> None:
         out = self._out
-        if out.limits or out.ledgers is None:
-            return
-        out.spindle = self.spindle
-        interface = self._adviser.knowledge.interfaces[self._situation.value("machine.interface")]
-        out.meter = Meter(self._situation, self._practice, self._adviser.knowledge.cutters, interface, self.spindle)
-        planner = Planner(self._situation, out.tuning.values, self._practice, self.spindle)
-        dead: set[tuple[Any, ...]] = set()
-        for candidate in self._candidates(interface):
-            if self._settled(candidate):
-                break
-            out.candidates_possible += 1
-            if dead.isdisjoint(_kin(candidate)):
-                tried = self._try(candidate, planner)
-                (out.rejected if tried.limits else out.stands).append(tried)
-                dead.update(self._ruled_out_with(tried))
-        out.stands.sort(key=lambda tried: -tried.standing)
-
-    def _candidates(self, interface: Any) -> Iterator[Candidate]:
-        assert self._out.ledgers is not None
-        cutters = self._adviser.knowledge.cutters
-        own = own_cutters(self._out.job, self._adviser.knowledge)
-        if own:
-            return iter(own_candidates(own, cutters, self._out.ledgers, interface.mountings.options))
-        return Catalogue(cutters, self._out.ledgers, self._out.job.units, interface.mountings.options).best_first()
-
-    def _settled(self, candidate: Candidate) -> bool:
-        """Whether no candidate from here on can beat the best, and enough runners-up are known."""
-        stands = self._out.stands
-        if not stands:
-            return False
-        best = max(tried.standing for tried in stands)
-        if candidate.evidence > best:
-            return False
-        kinds = {(tried.candidate.family.id, tried.candidate.size.label) for tried in stands}
-        beyond = sum(1 for tried in stands + self._out.rejected if tried.candidate.evidence <= best)
-        return len(kinds) > RUNNERS_UP or beyond >= EXTRA_TRIES
-
-    def _try(self, candidate: Candidate, planner: Planner) -> Tried:
-        out, stage = self._out, self._adviser.stages["judge"]
-        assert out.meter is not None
-        plan = planner.plan(candidate, out.separate["direction"])
-        facts = {**out.meter.picks(candidate, out.separate), **out.meter.measure(plan)}
-        situation = self._with(facts)
-        limits = [LimitRecord("cutter_on_hand", entry.why, None, None, entry.rule, []) for entry in candidate.blocked]
-        reasons, records, lowered = [], [], 0.0
-        for firing in stage.run(situation):
-            then = stage.rules[firing.rule].then
-            record = stage.record(firing, situation, out.job.units, candidate.label)
-            records.append(record)
-            if then.reject:
-                limits.append(self._limit(stage, firing.rule, then.reject, situation))
-            if then.lower:
-                lowered += self._adviser.knowledge.strengths[then.lower].weight
-                reasons.append(f"{record.why} ({record.rule}, {then.lower})")
-        return Tried(candidate, plan, facts, tuple(limits), lowered, tuple(reasons), tuple(records))
-
-    def _ruled_out_with(self, tried: Tried) -> Iterator[tuple[Any, ...]]:
-        """Yield what else need not be tried: tools that share everything the rejecting rules looked at."""
-        rules = self._adviser.stages["judge"].rules
-        body, cut, _ = _kin(tried.candidate)
-        rough = tried.plan.loads[0].name == "roughing"
-        for limit in tried.limits:
-            if limit.rule not in rules:
-                continue
-            looked_at = {fact for fact in rules[limit.rule].when if fact.startswith(("plan.", "pick."))}
-            if looked_at <= BODY_FACTS:
-                yield body
-            elif rough and looked_at <= CUT_FACTS:
-                yield cut
-
-    def _with(self, facts: Mapping[str, Any]) -> Situation:
-        situation = self._situation.copy()
-        for name, value in facts.items():
-            situation.set(name, value, "computed", "plan")
-        return situation
-
-    def _limit(self, stage: Stage, rule: str, spec: RejectSpec, situation: Situation) -> LimitRecord:
-        against = situation.value(spec.against) if isinstance(spec.against, str) else spec.against
-        text = fill(stage.rules[rule].why, situation, self._vocabulary, self._out.job.units)
-        return LimitRecord(spec.limit, text, plain_value(situation.value(spec.value)), plain_value(against), rule, list(spec.relax))
+        if not out.limits:
+            Search(self._adviser, out, self.spindle).run(only)
 
     # ------------------------------------------------------------------ cautions
     def _caution(self) -> None:
         out, stage = self._out, self._adviser.stages["caution"]
-        situation = self._with(out.stands[0].facts) if out.stands else self._situation.copy()
+        situation = self._situation.with_facts(out.stands[0].facts if out.stands else {}, "plan")
         for name, value in self._answer_facts().items():
             situation.set(name, value, "computed", "answer")
         for firing in stage.run(situation):
             record = stage.record(firing, situation, out.job.units)
             out.firings.append(record)
-            out.cautions.append((record, _filled(stage.rules[firing.rule].then, situation, self._vocabulary, out.job.units)))
+            out.cautions.append(
+                (record, _filled(stage.rules[firing.rule].then, situation, self._vocabulary, out.job.units))
+            )
 
     def _answer_facts(self) -> dict[str, Any]:
         out = self._out
@@ -418,13 +336,6 @@ def _filled(then: Conclusion, situation: Situation, vocabulary: Vocabulary, syst
 
 def _option(option: object) -> str:
     return kappa_key(float(option)) if isinstance(option, int | float) else str(option)
-
-
-def _kin(candidate: Candidate) -> tuple[tuple[Any, ...], ...]:
-    """Return what a candidate shares with others: its body; its cut; and itself."""
-    body = (candidate.family.id, candidate.size.label, candidate.own.id if candidate.own else None)
-    cut = (*body, candidate.pitch, candidate.rake.axial_deg, candidate.rake.radial_deg, candidate.edge)
-    return body, cut, (*cut, candidate.corner.corner, candidate.wiper)
 
 
 @cache

@@ -57,9 +57,7 @@ def write(out: Path, text: str) -> None:
     try:
         out.write_text(text, encoding="utf-8", newline="\n")
     except OSError as problem:
-        raise MillreasonError(
-            f"{out}: cannot be written: {problem.strerror}. Choose another --out."
-        ) from problem
+        raise MillreasonError(f"{out}: cannot be written: {problem.strerror}. Choose another --out.") from problem
     say(f"written: {out}", err=True)
 
 

@@ -28,7 +28,22 @@ class Situation:
         other._values = dict(self._values)
         return other
 
-    def set(self, name: str, value: Value, origin: Origin, by: str = "", text: str = "", basis: BasisRecord | None = None) -> bool:
+    def with_facts(self, facts: Mapping[str, Value], by: str) -> Situation:
+        """Return a copy with further computed facts."""
+        other = self.copy()
+        for name, value in facts.items():
+            other.set(name, value, "computed", by)
+        return other
+
+    def set(
+        self,
+        name: str,
+        value: Value,
+        origin: Origin,
+        by: str = "",
+        text: str = "",
+        basis: BasisRecord | None = None,
+    ) -> bool:
         """Record a fact unless it is known already; return whether it was new."""
         if value is None or name in self._values:
             return False
@@ -66,7 +81,11 @@ class Situation:
                 yield from (Fact(attribute, item) for item in items if isinstance(item, str | int | float))
         elif kind == "lacks":
             held = value if isinstance(value, tuple) else (value,)
-            yield from (Fact(attribute, option, "lacks") for option in self._vocabulary.facts[attribute].options if option not in held)
+            yield from (
+                Fact(attribute, option, "lacks")
+                for option in self._vocabulary.facts[attribute].options
+                if option not in held
+            )
         elif (value is None) == (kind == "missing"):
             yield Fact(attribute, "" if kind == "missing" else True, kind)  # type: ignore[arg-type]
 

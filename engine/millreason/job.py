@@ -13,7 +13,20 @@ from millreason.vocabulary import FactDefinition, Vocabulary
 from millreason.yaml_source import Document, Key, parse_yaml, read_yaml
 
 Value = str | float | bool | tuple[str, ...] | tuple[float, ...] | tuple[tuple[float, float], ...]
-SECTIONS = ("job", "title", "work", "require", "machine", "fixture", "confirm", "costs", "cutters", "existing", "notes", "invented")
+SECTIONS = (
+    "job",
+    "title",
+    "work",
+    "require",
+    "machine",
+    "fixture",
+    "confirm",
+    "costs",
+    "cutters",
+    "existing",
+    "notes",
+    "invented",
+)
 CASE_SECTIONS = ("case", "job", "expect")
 LEAD_EQUAL_TO_KAPPA_DEG = 45.0
 
@@ -110,7 +123,11 @@ class _Reader:
             if name not in SECTIONS:
                 self._say(key, f"unknown section.{did_you_mean(name, SECTIONS)} Sections: {', '.join(SECTIONS)}.")
             elif name in ("job", "title", "notes", "invented"):
-                title, notes = (str(value), notes) if name in ("job", "title") else (title, str(value) if name == "notes" else notes)
+                title, notes = (
+                    (str(value), notes)
+                    if name in ("job", "title")
+                    else (title, str(value) if name == "notes" else notes)
+                )
             elif name == "cutters":
                 cutters = tuple(self._cutters(key, value))
             elif name == "existing":
@@ -122,7 +139,16 @@ class _Reader:
         if self.findings:
             raise DataError(self.findings)
         units = "inch" if self.inch > self.metric else "metric"
-        return Job(title or self.document.name, self.given, machine_name, cutters, existing, units, self.document.name, notes)
+        return Job(
+            title or self.document.name,
+            self.given,
+            machine_name,
+            cutters,
+            existing,
+            units,
+            self.document.name,
+            notes,
+        )
 
     def _content(self) -> tuple[dict[str, Any], Key]:
         data = self.document.data
@@ -131,7 +157,10 @@ class _Reader:
         if isinstance(data.get("job"), dict):
             for name in data:
                 if name not in CASE_SECTIONS:
-                    self._say((name,), f"unknown section.{did_you_mean(name, CASE_SECTIONS)} Beside a case stand: {', '.join(CASE_SECTIONS)}.")
+                    self._say(
+                        (name,),
+                        f"unknown section.{did_you_mean(name, CASE_SECTIONS)} Beside a case stand: {', '.join(CASE_SECTIONS)}.",
+                    )
             return data["job"], ("job",)
         return data, ()
 
@@ -144,8 +173,13 @@ class _Reader:
                 continue
             fact = self.vocabulary.job_keys.get(f"{section}.{name}")
             if fact is None:
-                known = [entry.split(".", 1)[1] for entry in self.vocabulary.job_keys if entry.startswith(f"{section}.")]
-                self._say(path, f"unknown field.{did_you_mean(name, known)} Fields of {section}: {', '.join(sorted(known))}.")
+                known = [
+                    entry.split(".", 1)[1] for entry in self.vocabulary.job_keys if entry.startswith(f"{section}.")
+                ]
+                self._say(
+                    path,
+                    f"unknown field.{did_you_mean(name, known)} Fields of {section}: {', '.join(sorted(known))}.",
+                )
             elif raw is not None:
                 self._fact(path, fact, raw)
         return machine_name
@@ -170,7 +204,12 @@ class _Reader:
         if kind == "numbers":
             items = raw if isinstance(raw, list) else [raw]
             numbers = tuple(self._number(item, unit, line) for item in items)
-            return Given(tuple(sorted(_as_float(number.value) for number in numbers)), ", ".join(n.text for n in numbers), unit, line)
+            return Given(
+                tuple(sorted(_as_float(number.value) for number in numbers)),
+                ", ".join(n.text for n in numbers),
+                unit,
+                line,
+            )
         if kind == "curve":
             return Given(self._curve(raw), str(raw), "", line)
         if kind == "flag":
@@ -181,7 +220,12 @@ class _Reader:
             return Given(str(raw), str(raw), "", line)
         if kind == "choices":
             items = raw if isinstance(raw, list) else [raw]
-            return Given(tuple(dict.fromkeys(self._choice(definition, fact, item) for item in items)), ", ".join(map(str, items)), "", line)
+            return Given(
+                tuple(dict.fromkeys(self._choice(definition, fact, item) for item in items)),
+                ", ".join(map(str, items)),
+                "",
+                line,
+            )
         return Given(self._choice(definition, fact, raw), str(raw), "", line)
 
     def _number(self, raw: Any, unit: str, line: int) -> Given:
@@ -209,7 +253,9 @@ class _Reader:
         plain = {option.lower().replace("-", "_"): option for option in options}
         match = plain.get(word.lower().replace(" ", "_").replace("-", "_"))
         if match is None:
-            raise QuantityError(f"{raw!r} is not known here.{did_you_mean(word, options)} Allowed: {', '.join(options)}.")
+            raise QuantityError(
+                f"{raw!r} is not known here.{did_you_mean(word, options)} Allowed: {', '.join(options)}."
+            )
         return match
 
     def _curve(self, raw: Any) -> tuple[tuple[float, float], ...]:
@@ -244,7 +290,10 @@ class _Reader:
             target, unit = CUTTER_FIELDS.get(name, ("", ""))
             if not target:
                 known = ["id", *CUTTER_FIELDS]
-                self._say((*key, name), f"unknown field.{did_you_mean(name, known)} Fields of a cutter: {', '.join(known)}.")
+                self._say(
+                    (*key, name),
+                    f"unknown field.{did_you_mean(name, known)} Fields of a cutter: {', '.join(known)}.",
+                )
                 continue
             try:
                 values[target] = self._cutter_value(target, unit, entry)
@@ -278,9 +327,15 @@ class _Reader:
             return
         angle = _as_float(lead)
         if convention not in (None, "lead", "kappa"):
-            self._say((*key, "lead_convention"), f"{convention!r} is not known. Write lead (90 minus kappa) or kappa.")
+            self._say(
+                (*key, "lead_convention"),
+                f"{convention!r} is not known. Write lead (90 minus kappa) or kappa.",
+            )
         elif "kappa_deg" in values and abs(_as_float(values["kappa_deg"]) + angle - 90) > 0.01:
-            self._say((*key, "lead"), f"lead {angle:g} and kappa {_as_float(values['kappa_deg']):g} do not add up to 90. Keep one.")
+            self._say(
+                (*key, "lead"),
+                f"lead {angle:g} and kappa {_as_float(values['kappa_deg']):g} do not add up to 90. Keep one.",
+            )
         elif convention is None and angle != LEAD_EQUAL_TO_KAPPA_DEG and "kappa_deg" not in values:
             said = f"{angle:g} deg can mean kappa {90 - angle:g} or kappa {angle:g}: usage differs."
             self._say((*key, "lead"), f"{said} Write 'kappa: {90 - angle:g} deg' or 'kappa: {angle:g} deg' instead.")

@@ -1,4 +1,4 @@
-"""Which limits bind where nothing is possible: those that refuse, that reject every candidate, or that exclude what was needed."""
+"""Which limits bind where nothing is possible: those that refuse, reject every candidate, or exclude what was needed."""
 
 from __future__ import annotations
 
@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING
 from millreason.trace import LimitRecord
 
 if TYPE_CHECKING:
-    from millreason.choice import Outcome
+    from millreason.outcome import Outcome
 
 # Rejections that a larger cutter would cure: with them, what excluded the larger cutters binds too.
 CURED_BY_SIZE = frozenset({"one_pass"})

@@ -20,7 +20,6 @@ from millreason.spindle import Spindle
 from millreason.trace import Question
 from millreason.vocabulary import Vocabulary
 
-
 # Which fluid of a plan each supply of a machine gives; a cut can always be dry.
 _SUPPLIES = {
     "air": "air_blast", "flood": "flood", "flood_water_mixed": "flood", "mg_rated_fluid": "flood", "through_tool": "through_tool",
@@ -62,12 +61,19 @@ def unit_doubts(situation: Situation, vocabulary: Vocabulary, far: float) -> lis
     doubts = []
     for record in situation.records():
         definition = vocabulary.facts.get(record.name)
-        if record.origin != "given" or definition is None or definition.plausible is None or not isinstance(record.value, float):
+        if (
+            record.origin != "given"
+            or definition is None
+            or definition.plausible is None
+            or not isinstance(record.value, float)
+        ):
             continue
         low, high = definition.plausible
         if not low / far <= record.value <= high * far:
             usual = f"{low:g} to {high:g} {definition.unit}"
-            doubts.append(f"{definition.means}: {record.text or record.value} is far from the usual {usual}; is the unit right?")
+            doubts.append(
+                f"{definition.means}: {record.text or record.value} is far from the usual {usual}; is the unit right?"
+            )
     return doubts
 
 
@@ -81,9 +87,21 @@ def look_up_usual(situation: Situation, knowledge: Knowledge) -> bool:
     label = efficiency.basis_label(drive)
     value = efficiency.number if drive is None else by_drive.of(drive)
     file = "knowledge/practice.yaml"
-    situation.set("machine.usual_efficiency", value, "looked_up", f"{file}", basis=_record(knowledge.basis(file, label), False))
+    situation.set(
+        "machine.usual_efficiency",
+        value,
+        "looked_up",
+        f"{file}",
+        basis=_record(knowledge.basis(file, label), False),
+    )
     base = practice["base_speed_default_rpm"]
-    situation.set("machine.usual_base_speed_rpm", base.number, "looked_up", file, basis=_record(knowledge.basis(file, base.basis_label()), False))
+    situation.set(
+        "machine.usual_base_speed_rpm",
+        base.number,
+        "looked_up",
+        file,
+        basis=_record(knowledge.basis(file, base.basis_label()), False),
+    )
     return len(situation.records()) > before
 
 
@@ -93,12 +111,25 @@ def _look_up_machine(job: Job, knowledge: Knowledge, situation: Situation) -> No
     machine = knowledge.machines.get(job.machine_name)
     if machine is None:
         hint = did_you_mean(job.machine_name, knowledge.machines)
-        raise DataError([Finding(job.file, 1, "machine.name", f"{job.machine_name!r} is no machine here.{hint} 'millreason machines' lists them.")])
+        raise DataError(
+            [
+                Finding(
+                    job.file,
+                    1,
+                    "machine.name",
+                    f"{job.machine_name!r} is no machine here.{hint} 'millreason machines' lists them.",
+                )
+            ]
+        )
     from_shop = machine.id in knowledge.from_shop
     for name, value in machine.facts().items():
         label = machine.basis_label(name.removeprefix("machine."))
         basis = None if from_shop else knowledge.basis("knowledge/machines.yaml", label)
-        settled = tuple(tuple(item) if isinstance(item, list) else item for item in value) if isinstance(value, list) else value
+        settled = (
+            tuple(tuple(item) if isinstance(item, list) else item for item in value)
+            if isinstance(value, list)
+            else value
+        )
         situation.set(name, settled, "looked_up", f"machine {machine.id}", basis=_record(basis, from_shop))
 
 
@@ -129,12 +160,24 @@ def _look_up_material(job: Job, materials: Materials, vocabulary: Vocabulary, re
     situation = result.situation
     hardness = job.given.get("work.hardness_hb")
     measured = (float(hardness.value), hardness.unit) if hardness and isinstance(hardness.value, int | float) else None
-    found = materials.look_up(situation.value("work.material"), situation.value("work.iso_group"), measured, situation.value("work.condition"))
+    found = materials.look_up(
+        situation.value("work.material"),
+        situation.value("work.iso_group"),
+        measured,
+        situation.value("work.condition"),
+    )
     for fact in found.facts:
         value = tuple(fact.value) if isinstance(fact.value, list) else fact.value
         if isinstance(value, int) and not isinstance(value, bool):
             value = float(value)
-        situation.set(fact.name, value, "given" if fact.given else "looked_up", fact.by, fact.text, _record(fact.basis, fact.from_shop))
+        situation.set(
+            fact.name,
+            value,
+            "given" if fact.given else "looked_up",
+            fact.by,
+            fact.text,
+            _record(fact.basis, fact.from_shop),
+        )
     result.contradictions.extend(found.contradictions)
     result.notes.extend(found.notes)
     if found.question is not None:
@@ -167,8 +210,18 @@ def complete_situation(situation: Situation, knowledge: Knowledge, vocabulary: V
     width = fact("work.width_mm")
     if width is not None:
         share = knowledge.practice["width_to_diameter_one_pass"]
-        situation.set("job.one_pass_least_mm", width / (share.high or 1.0), "computed", "width over the largest share of the diameter")
-        situation.set("job.one_pass_most_mm", width / (share.low or 1.0), "computed", "width over the smallest share of the diameter")
+        situation.set(
+            "job.one_pass_least_mm",
+            width / (share.high or 1.0),
+            "computed",
+            "width over the largest share of the diameter",
+        )
+        situation.set(
+            "job.one_pass_most_mm",
+            width / (share.low or 1.0),
+            "computed",
+            "width over the smallest share of the diameter",
+        )
     fluids = fact("machine.fluids") or ()
     supplied = ("dry", *(_SUPPLIES[fluid] for fluid in fluids if fluid in _SUPPLIES))
     situation.set("machine.coolants", tuple(dict.fromkeys(supplied)), "computed", "fluids of the machine")
@@ -177,14 +230,29 @@ def complete_situation(situation: Situation, knowledge: Knowledge, vocabulary: V
         situation.set("machine.speed_max_rpm", max(steps), "computed", "highest step")
 
 
-def size_facts(nominal_mm: float, situation: Situation, knowledge: Knowledge, tuning: Mapping[str, float], spindle: Spindle) -> dict[str, float]:
+def size_facts(
+    nominal_mm: float,
+    situation: Situation,
+    knowledge: Knowledge,
+    tuning: Mapping[str, float],
+    spindle: Spindle,
+) -> dict[str, float]:
     """Return the size.* facts of one diameter of the series for a job."""
     fact, practice = situation.value, knowledge.practice
     width = fact("work.width_mm")
     most = tuning.get("width_to_diameter_most", math.inf)
     one_pass = min(practice["width_to_diameter_one_pass"].high or 1.0, most)
     single = fact("require.one_pass") or fact("require.no_overlap_line") or fact("work.feature") == "slot"
-    passes = 1 if single or width <= one_pass * nominal_mm else passes_across(width, nominal_mm, practice["pass_overlap_mm"].number, min(practice["width_to_diameter_most"].number, most))
+    passes = (
+        1
+        if single or width <= one_pass * nominal_mm
+        else passes_across(
+            width,
+            nominal_mm,
+            practice["pass_overlap_mm"].number,
+            min(practice["width_to_diameter_most"].number, most),
+        )
+    )
     strip = (width + (passes - 1) * practice["pass_overlap_mm"].number) / passes
     speed = spindle_speed(fact("material.speed_start_m_min"), nominal_mm)
     at = min(speed, spindle.speed_max_rpm)
@@ -195,9 +263,16 @@ def size_facts(nominal_mm: float, situation: Situation, knowledge: Knowledge, tu
         "size.passes_across": float(passes),
         "size.to_usual_largest": _over(nominal_mm, fact("machine.largest_usual_diameter_mm")),
         "size.to_light_largest": _over(nominal_mm, fact("machine.largest_light_diameter_mm")),
-        "size.to_changer": _over(nominal_mm, fact("machine.changer_full_mm") if fact("machine.changer_state") == "full" else fact("machine.changer_empty_mm", fact("machine.changer_full_mm"))),
+        "size.to_changer": _over(
+            nominal_mm,
+            fact("machine.changer_full_mm")
+            if fact("machine.changer_state") == "full"
+            else fact("machine.changer_empty_mm", fact("machine.changer_full_mm")),
+        ),
         "size.to_changer_full": _over(nominal_mm, fact("machine.changer_full_mm")),
-        "size.to_pocket": _over(nominal_mm, min(width, fact("work.length_mm"))) if fact("work.feature") == "closed_pocket" else None,
+        "size.to_pocket": _over(nominal_mm, min(width, fact("work.length_mm")))
+        if fact("work.feature") == "closed_pocket"
+        else None,
         "size.speed_use": speed / spindle.speed_max_rpm,
         "size.torque_share": min(available_power(spindle.net_curve, at) / full, 1.0),
     }

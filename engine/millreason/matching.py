@@ -20,7 +20,7 @@ from typing import ClassVar, Literal, cast, get_args
 from millreason.errors import OutOfRangeError, RuleActionError, RuleSetLimitError
 
 Scalar = str | float | bool
-Kind = Literal["value", "missing", "lacks"]
+Kind = Literal["value", "missing", "lacks", "known"]
 Op = Literal["eq", "ne", "lt", "le", "gt", "ge", "between", "in", "not_in"]
 TypedValue = tuple[str, Scalar]
 

@@ -7,6 +7,7 @@ from collections.abc import Mapping
 from typing import Any
 
 from millreason.candidates import Candidate
+from millreason.cut_plan import Load, Plan
 from millreason.cutters import CuttersFile
 from millreason.facts import Situation
 from millreason.formulas.body import Assembly, body_mass, combined_mass, tip_moment
@@ -14,14 +15,9 @@ from millreason.formulas.chip import chip_volume_per_tooth_pass, gullet_fill
 from millreason.formulas.engagement import exit_angle_from_centreline
 from millreason.formulas.entry_paths import ramp_limit_angle
 from millreason.formulas.first_contact import first_contact
-from millreason.formulas.holding import lift_force, vacuum_hold
-from millreason.formulas.rakes import inclination
-from millreason.formulas.stiffness import floor_deflection, stable_depth, wall_deflection
-from millreason.formulas.surface import land_against_feed, roughness_with_runout
-from millreason.formulas.tilt import tilt_dish
 from millreason.formulas.travel import full_overrun_travel, pass_time
 from millreason.machines import Interface
-from millreason.plan import Load, Plan
+from millreason.quality import Quality
 from millreason.spindle import Spindle
 
 MM3_PER_M3 = 1e9
@@ -46,12 +42,20 @@ CUT_FACTS = BODY_FACTS | {
 class Meter:
     """Measures the plans of one job."""
 
-    def __init__(self, situation: Situation, practice: Mapping[str, Any], cutters: CuttersFile, interface: Interface, spindle: Spindle) -> None:
+    def __init__(
+        self,
+        situation: Situation,
+        practice: Mapping[str, Any],
+        cutters: CuttersFile,
+        interface: Interface,
+        spindle: Spindle,
+    ) -> None:
         self._fact = situation.value
         self._practice = practice
         self._cutters = cutters
         self._interface = interface
         self._spindle = spindle
+        self.quality = Quality(situation, practice)
 
     def picks(self, candidate: Candidate, separate: Mapping[str, str]) -> dict[str, Any]:
         """Return the pick.* facts of a candidate and the picks that hold for the whole job."""
@@ -78,8 +82,8 @@ class Meter:
             **self._body(plan),
             **self._passes(plan),
             **self._cut(plan),
-            **self._surface(plan),
-            **self._holding(plan),
+            **self.quality.surface(plan),
+            **self.quality.holding(plan),
         }
         return {f"plan.{name}": value for name, value in facts.items() if value is not None}
 
@@ -89,13 +93,25 @@ class Meter:
         candidate, sheet = plan.candidate, plan.sheet
         material = self._cutters.body_materials[0]
         size = candidate.size
-        mass = sheet.use("mass of the body", "kg", body_mass, size.nominal_mm, size.height_mm, size.bore_mm or 0.0, material.density_kg_mm3 * MM3_PER_M3, material.fill)
+        mass = sheet.use(
+            "mass of the body",
+            "kg",
+            body_mass,
+            size.nominal_mm,
+            size.height_mm,
+            size.bore_mm or 0.0,
+            material.density_kg_mm3 * MM3_PER_M3,
+            material.fill,
+        )
         marked = candidate.own.values.get("mass_kg") if candidate.own else None
         adapter = self._interface.adapter
         if candidate.mounting == "spindle_nose_flange":
             return Assembly(mass, size.height_mm / 2)
         length = max(self._fact("fixture.overhang_mm", adapter.length_mm + size.height_mm) - size.height_mm, 0.0)
-        parts = ((float(marked) if isinstance(marked, int | float) else mass, length + size.height_mm / 2), (adapter.mass_kg, length / 2))
+        parts = (
+            (float(marked) if isinstance(marked, int | float) else mass, length + size.height_mm / 2),
+            (adapter.mass_kg, length / 2),
+        )
         return sheet.use("mass of the assembly", "kg", combined_mass, parts)
 
     def gauge_length(self, candidate: Candidate) -> float:
@@ -112,7 +128,10 @@ class Meter:
         caution = candidate.family.speed_caution
         limit = candidate.speed_limit_rpm
         if math.isinf(limit):
-            limit = min(caution.spindle_speed_rpm, 1000 * caution.cutting_speed_m_min / (math.pi * candidate.diameter_mm))
+            limit = min(
+                caution.spindle_speed_rpm,
+                1000 * caution.cutting_speed_m_min / (math.pi * candidate.diameter_mm),
+            )
         return {
             "outermost_diameter_mm": outermost,
             "changer_full_use": _over(outermost, self._fact("machine.changer_full_mm")),
@@ -154,19 +173,30 @@ class Meter:
             "depth_use": max(load.depth_mm for load in plan.loads) / plan.candidate.family.usable_depth_mm,
             "first_layer_to_skin": first.depth_mm / skin if (skin := self._fact("work.skin_depth_mm")) else None,
             "uncovered": bool(layout.one_pass and self._fact("work.width_mm") > layout.width_mm + 1e-6),
-            "entry": ("helix" if self._fact("work.length_mm") < 3 * plan.candidate.outermost_mm else "ramp") if pocket else "from_outside",
+            "entry": ("helix" if self._fact("work.length_mm") < 3 * plan.candidate.outermost_mm else "ramp")
+            if pocket
+            else "from_outside",
             "time_min": self.time(plan),
         }
 
     def travel(self, plan: Plan) -> float:
         """Return the travel of one pass: length, diameter and clearance at both ends."""
         clearance = self._number("approach_clearance_mm")
-        return plan.sheet.use("travel of a pass", "mm", full_overrun_travel, self._fact("work.length_mm"), plan.candidate.diameter_mm, clearance)
+        return plan.sheet.use(
+            "travel of a pass",
+            "mm",
+            full_overrun_travel,
+            self._fact("work.length_mm"),
+            plan.candidate.diameter_mm,
+            clearance,
+        )
 
     def time(self, plan: Plan) -> float:
         """Return the time in feed with the way back for every further pass."""
         travel, back = self.travel(plan), self._number("extra_pass_min")
-        single = [pass_time(travel, load.table_feed_mm_min, load.layers * plan.layout.passes, back) for load in plan.loads]
+        single = [
+            pass_time(travel, load.table_feed_mm_min, load.layers * plan.layout.passes, back) for load in plan.loads
+        ]
         return sum(single) + back * (len(single) - 1)
 
     # ------------------------------------------------------------------ speed, chip, power, gullet, entry and exit
@@ -175,7 +205,9 @@ class Meter:
         wear = self._number("wear_factor")
         thinnest = min(plan.loads, key=lambda entry: entry.hex_mm)
         high = self._fact("material.kc_high_ratio", 1 + self._number("force_band"))
-        exit_from_line = plan.sheet.use("exit angle from the centre line", "deg", exit_angle_from_centreline, arc.exit_deg)
+        exit_from_line = plan.sheet.use(
+            "exit angle from the centre line", "deg", exit_angle_from_centreline, arc.exit_deg
+        )
         contact = plan.sheet.use(
             "plan.first_contact", "", first_contact, load.depth_mm, load.feed_per_tooth_mm, max(load.kappa_mean_deg, 1.0),
             arc.entry_deg, candidate.rake.radial_deg, candidate.rake.axial_deg,
@@ -201,7 +233,9 @@ class Meter:
             "gullet_use": self._gullet(plan, load),
             "exit_offset_share": abs(math.sin(math.radians(exit_from_line))) / 2,
             "first_contact": contact.points if len(contact.points) == 1 else "tie",
-            "feed_use": _over(max(entry.table_feed_mm_min for entry in plan.loads), self._fact("machine.feed_max_mm_min")),
+            "feed_use": _over(
+                max(entry.table_feed_mm_min for entry in plan.loads), self._fact("machine.feed_max_mm_min")
+            ),
         }
 
     def _gullet(self, plan: Plan, load: Load) -> float | None:
@@ -211,106 +245,15 @@ class Meter:
         ratio = self._practice["chip_ratio"].by[self._fact("material.chip_form", "long")]
         if room <= 0:
             return None
-        volume = plan.sheet.use("chip volume of a tooth pass", "mm3", chip_volume_per_tooth_pass, load.depth_mm, plan.layout.width_mm, load.feed_per_tooth_mm)
+        volume = plan.sheet.use(
+            "chip volume of a tooth pass",
+            "mm3",
+            chip_volume_per_tooth_pass,
+            load.depth_mm,
+            plan.layout.width_mm,
+            load.feed_per_tooth_mm,
+        )
         return plan.sheet.use("plan.gullet_use", "", gullet_fill, volume, ratio, room)
-
-    # ------------------------------------------------------------------ surface
-    def roughness(self, plan: Plan) -> tuple[float, float, float]:
-        """Return the roughness Ra expected, and its bounds with perfect teeth and with axial run-out."""
-        load, candidate = plan.last, plan.candidate
-        floor = self._practice["ra_floor_um"].by[self._fact("material.iso_group")]
-        run_out = self.run_out(plan)
-        feed_rev = load.feed_per_tooth_mm * candidate.teeth
-        if candidate.land_mm >= feed_rev:
-            return floor, floor, floor + run_out * 1000 / self._number("ra_to_rt") * (0 if candidate.wiper != "none" else 1)
-        radius = candidate.corner.radius_mm or candidate.land_mm
-        if radius <= 0:
-            return floor, floor, floor
-        bounds = plan.sheet.use("roughness of the last layer", "um", roughness_with_runout, load.feed_per_tooth_mm, candidate.teeth, radius, run_out)
-        if candidate.land_mm >= load.feed_per_tooth_mm:
-            high = floor + run_out * 1000 / self._number("ra_to_rt")
-            return high, floor, high
-        return max(bounds.runout.ra_um, floor), max(bounds.perfect.ra_um, floor), max(bounds.runout.ra_um, floor)
-
-    def run_out(self, plan: Plan) -> float:
-        """Return the axial run-out assumed for the last layer."""
-        by = self._practice["run_out_axial_mm"].by
-        if plan.candidate.pockets == "cartridge":
-            return float(by["cartridge"])
-        return float(by["fixed_finishing"] if plan.last.name == "finishing" else by["fixed"])
-
-    def _surface(self, plan: Plan) -> dict[str, Any]:
-        load, candidate = plan.last, plan.candidate
-        expected = self.roughness(plan)[0]
-        land = None
-        if candidate.land_mm > 0:
-            land = plan.sheet.use("plan.land_to_feed", "", land_against_feed, candidate.land_mm, load.feed_per_tooth_mm * candidate.teeth)
-        return {
-            "ra_um": expected,
-            "ra_use": _over(expected, self._fact("require.finish_ra_um")),
-            "land_to_feed": land,
-            "corner_use": _over(candidate.corner.radius_mm, self._fact("work.corner_radius_mm")),
-        }
-
-    # ------------------------------------------------------------------ holding, spring, chatter
-    def _holding(self, plan: Plan) -> dict[str, Any]:
-        load = plan.heaviest
-        kappa = max(load.kappa_mean_deg, 1.0)
-        incline = plan.sheet.use("inclination", "deg", inclination, plan.candidate.rake.radial_deg, plan.candidate.rake.axial_deg, kappa)
-        thrust = load.peak_tangential_n * self._number("radial_to_tangential")
-        lift = plan.sheet.use("lift", "N", lift_force, load.peak_tangential_n, thrust, kappa, incline).lift_n
-        clamp = self._clamp(plan)
-        floor, wall = self._floor(plan), self._wall(plan)
-        tilt = self._fact("machine.spindle_tilt_mm_m")
-        layout = plan.layout
-        dish = plan.sheet.use("dish by tilt", "mm", tilt_dish, tilt, plan.candidate.diameter_mm, layout.width_mm, layout.entry_gap_mm) if tilt else None
-        off = sum(part for part in (floor, wall, dish) if part is not None) if (floor or wall or dish) else None
-        return {
-            "lift_n": lift,
-            "lift_to_clamp": lift * self._number("clamp_factor") / clamp if clamp else None,
-            "floor_spring_mm": floor,
-            "wall_bend_mm": wall,
-            "dish_mm": dish,
-            "flatness_use": _over(off, self._fact("require.flatness_mm")) if off else None,
-            "stable_depth_use": self._stability(plan, load),
-        }
-
-    def _clamp(self, plan: Plan) -> float | None:
-        given = self._fact("fixture.clamp_force_n")
-        area = self._fact("fixture.sealed_area_mm2")
-        if given is None and area is not None and self._fact("fixture.hold") == "vacuum":
-            return plan.sheet.use("vacuum hold-down", "N", vacuum_hold, area, self._number("vacuum_pressure_n_mm2"))
-        return float(given) if given is not None else None
-
-    def _floor(self, plan: Plan) -> float | None:
-        thickness, span = self._fact("work.floor_thickness_mm"), self._fact("work.unsupported_span_mm")
-        modulus = self._modulus()
-        if None in (thickness, span, modulus) or self._fact("fixture.support_below"):
-            return None
-        poisson = self._number("poisson_ratio")
-        return plan.sheet.use("plan.floor_spring_mm", "mm", floor_deflection, plan.last.axial_n, span, thickness, modulus, poisson, "resting")
-
-    def _wall(self, plan: Plan) -> float | None:
-        thickness, height = self._fact("work.wall_thickness_mm"), self._fact("work.wall_height_mm")
-        modulus = self._modulus()
-        if None in (thickness, height, modulus):
-            return None
-        length = min(self._fact("work.length_mm"), height)
-        return plan.sheet.use("plan.wall_bend_mm", "mm", wall_deflection, plan.last.peak_tangential_n, height, thickness, length, modulus)
-
-    def _modulus(self) -> float | None:
-        value = self._practice["youngs_modulus_n_mm2"].by.get(self._fact("material.iso_group"))
-        return float(value) if value is not None else None
-
-    def _stability(self, plan: Plan, load: Load) -> float | None:
-        stiffness, damping = self._fact("machine.stiffness_n_um"), self._fact("machine.damping_ratio")
-        if stiffness is None or damping is None:
-            return None
-        teeth = max(plan.candidate.teeth * plan.layout.arc.arc_deg / 360, 1.0)
-        limit = plan.sheet.use(
-            "stable depth", "mm", stable_depth, stiffness / MM_PER_UM, damping, load.specific_force_n_mm2, self._number("direction_factor"), teeth, load.kappa_mean_deg
-        )  # fmt: skip
-        return load.depth_mm / limit.depth_mm
 
     def _number(self, name: str) -> float:
         return float(self._practice[name].value)

@@ -12,14 +12,23 @@ from millreason.trace import LimitRecord, Opening
 from millreason.units import show
 
 if TYPE_CHECKING:
-    from millreason.choice import Adviser, Outcome
+    from millreason.choice import Adviser
+    from millreason.outcome import Outcome
 
 STEPS = 24
 TOLERANCE = 0.01
 MOST_OPENINGS = 6
 # Facts of which less makes a job easier; of all others more does.
 LESS_IS_EASIER = frozenset(
-    {"work.stock_mm", "work.width_mm", "work.hardness_hb", "fixture.overhang_mm", "work.step_height_mm", "work.wall_height_mm", "work.unsupported_span_mm"}
+    {
+        "work.stock_mm",
+        "work.width_mm",
+        "work.hardness_hb",
+        "fixture.overhang_mm",
+        "work.step_height_mm",
+        "work.wall_height_mm",
+        "work.unsupported_span_mm",
+    }
 )
 
 
@@ -115,7 +124,11 @@ def _freed(adviser: Adviser, out: Outcome, fact: str) -> Any:
 
 def _machines(adviser: Adviser, out: Outcome) -> Iterator[Opening]:
     """Yield the first machine classes of the knowledge on which the same job is possible."""
-    kept = {name: entry for name, entry in out.job.given.items() if not name.startswith("machine.") or name == "machine.fluids"}
+    kept = {
+        name: entry
+        for name, entry in out.job.given.items()
+        if not name.startswith("machine.") or name == "machine.fluids"
+    }
     found = 0
     for name, machine in adviser.knowledge.machines.items():
         job = replace(out.job, given=kept, machine_name=name)
@@ -130,7 +143,9 @@ def _text(adviser: Adviser, out: Outcome, changes: dict[str, Any]) -> str:
         definition = adviser.vocabulary.facts[fact]
         before = out.situation.value(fact)
         now = _shown(value, definition.unit, out.job.units)
-        parts.append(f"{definition.means[0].lower()}{definition.means[1:]}: {now} instead of {_shown(before, definition.unit, out.job.units)}")
+        parts.append(
+            f"{definition.means[0].lower()}{definition.means[1:]}: {now} instead of {_shown(before, definition.unit, out.job.units)}"
+        )
     return "; and ".join(parts)
 
 

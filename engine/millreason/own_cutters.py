@@ -19,7 +19,9 @@ def own_cutters(job: Job, knowledge: Knowledge) -> tuple[OwnCutter, ...]:
     return job.cutters or tuple(OwnCutter(cutter.id, cutter.values()) for cutter in knowledge.on_hand.values())
 
 
-def own_candidates(own: Iterable[OwnCutter], cutters: CuttersFile, ledgers: Ledgers, mountings: Iterable[str]) -> list[Candidate]:
+def own_candidates(
+    own: Iterable[OwnCutter], cutters: CuttersFile, ledgers: Ledgers, mountings: Iterable[str]
+) -> list[Candidate]:
     """Return a candidate for every cutter on hand, best evidence first; one that a rule excludes says which."""
     offered = tuple(mountings)
     made = [candidate for cutter in own if (candidate := _candidate(cutter, cutters, ledgers, offered)) is not None]
@@ -43,15 +45,27 @@ def _candidate(cutter: OwnCutter, cutters: CuttersFile, ledgers: Ledgers, offere
     )
     corners = [corner for corner in family.corners if corner.corner == known.get("corner")] or list(family.corners)
     corner = max(corners, key=lambda option: ledgers.balance("corner", option.corner))
-    teeth = int(float(known["teeth"])) if isinstance(known.get("teeth"), int | float) else family.teeth_for(size, "fine") or 1
+    counted = known.get("teeth")
+    teeth = int(counted) if isinstance(counted, int | float) else family.teeth_for(size, "fine") or 1
     pitch = str(known.get("pitch") or _pitch(family, size, teeth))
     wiper = str(known.get("wiper", "none"))
     land = known.get("land_mm")
     wiper_land = float(land) if isinstance(land, int | float) else max(family.wipers.lands_mm) if family.wipers else 0.0
     fits = [row.mounting for row in cutters.mountings_for(family, size) if row.mounting in offered]
     mounting = known.get("mounting") or ledgers.best("mounting", fits) or "shell_arbor"
-    named = {"cutter_class": family.cutter_class, "pitch": pitch, "rake": rake.rake, "edge": edge, "corner": corner.corner, "wiper": wiper}
-    options = [*named.items(), ("kappa_deg", kappa_key(family.kappa_deg)), ("diameter_mm", size_key(size.nominal_mm))]
+    named = {
+        "cutter_class": family.cutter_class,
+        "pitch": pitch,
+        "rake": rake.rake,
+        "edge": edge,
+        "corner": corner.corner,
+        "wiper": wiper,
+    }
+    options = [
+        *named.items(),
+        ("kappa_deg", kappa_key(family.kappa_deg)),
+        ("diameter_mm", size_key(size.nominal_mm)),
+    ]
     blocked: list[Evidence] = [entry for pick, option in options for entry in ledgers.ruled_out(pick, option)]
     return Candidate(
         family, size, pitch, teeth, rake, edge, corner, wiper, wiper_land if wiper != "none" else 0.0,
@@ -65,7 +79,13 @@ def _family(known: Any, cutters: CuttersFile) -> CutterFamily | None:
     choices = [family for family in cutters.families if known.get("cutter_class") in (None, family.cutter_class)]
     if not choices:
         return None
-    nearest = min(choices, key=lambda family: (abs(family.kappa_deg - kappa) if kappa is not None else 0.0, not _within(family, known)))
+    nearest = min(
+        choices,
+        key=lambda family: (
+            abs(family.kappa_deg - kappa) if kappa is not None else 0.0,
+            not _within(family, known),
+        ),
+    )
     changes: dict[str, Any] = {}
     if kappa is not None and nearest.insert_diameter_mm is None:
         changes["kappa_deg"] = float(kappa)

@@ -4,10 +4,11 @@ from __future__ import annotations
 
 import math
 from collections.abc import Mapping
-from dataclasses import dataclass, field, replace
+from dataclasses import replace
 from typing import Any
 
 from millreason.candidates import Candidate
+from millreason.cut_plan import Layout, Load, Plan
 from millreason.facts import Situation
 from millreason.formulas.chip import feed_for_chip_thickness, maximum_chip_thickness, mean_chip_thickness
 from millreason.formulas.cutting_force import (
@@ -21,7 +22,7 @@ from millreason.formulas.cutting_force import (
 )
 from millreason.formulas.drive import speed_at_or_below
 from millreason.formulas.drive_curve import available_power
-from millreason.formulas.engagement import Engagement, engagement_arc, flush_arc, teeth_in_cut
+from millreason.formulas.engagement import engagement_arc, flush_arc
 from millreason.formulas.motion import cutting_speed, removal_rate, spindle_speed, table_feed
 from millreason.formulas.passes import passes_across
 from millreason.formulas.rakes import orthogonal_rake
@@ -31,85 +32,7 @@ from millreason.spindle import Spindle
 from millreason.worksheet import Worksheet
 
 Tuning = Mapping[str, float]
-FULL_ARC_RATIO = 1.0
 _TINY = 1e-9
-
-
-@dataclass(frozen=True)
-class Layout:
-    """How the passes lie on the face: their number, width, place of the cutter and the arc they cut."""
-
-    passes: int
-    width_mm: float
-    overlap_mm: float
-    offset_mm: float
-    entry_gap_mm: float
-    arc: Engagement
-    one_pass: bool
-
-
-@dataclass(frozen=True)
-class Load:
-    """What one kind of layer asks of the machine."""
-
-    name: str
-    layers: int
-    depth_mm: float
-    kappa_top_deg: float
-    kappa_mean_deg: float
-    cutting_speed_m_min: float
-    spindle_speed_rpm: float
-    feed_per_tooth_mm: float
-    table_feed_mm_min: float
-    hex_mm: float
-    mean_chip_mm: float
-    specific_force_n_mm2: float
-    force_factor: float
-    removal_cm3_min: float
-    net_power_kw: float
-    available_kw: float
-    torque_nm: float
-    peak_torque_nm: float
-    peak_tangential_n: float
-    tooth_force_n: float
-    radial_n: float
-    axial_n: float
-
-    def use_worn(self, wear_factor: float) -> float:
-        """Share of the power at this speed that worn edges take."""
-        return self.net_power_kw * wear_factor / self.available_kw
-
-
-@dataclass
-class Plan:
-    """The plan of one candidate, with the worksheet it was computed on."""
-
-    candidate: Candidate
-    layout: Layout
-    loads: list[Load]
-    direction: str
-    speed_wanted_m_min: float
-    hex_wanted_mm: float
-    hex_least_mm: float
-    layers_for_power: int
-    feed_left: float
-    orthogonal_rake_deg: float
-    sheet: Worksheet = field(default_factory=Worksheet)
-
-    @property
-    def heaviest(self) -> Load:
-        """The layer that takes the largest share of the power at its speed."""
-        return max(self.loads, key=lambda load: load.net_power_kw / load.available_kw)
-
-    @property
-    def last(self) -> Load:
-        """The layer that leaves the final surface."""
-        return self.loads[-1]
-
-    @property
-    def layers(self) -> int:
-        """Number of layers in depth."""
-        return sum(load.layers for load in self.loads)
 
 
 class Planner:
@@ -125,7 +48,14 @@ class Planner:
         """Compute the plan of a candidate: first as the knowledge starts it, then within the machine's power."""
         sheet = Worksheet()
         layout = self._layout(candidate, direction, sheet)
-        rake = sheet.use("orthogonal rake", "deg", orthogonal_rake, candidate.rake.radial_deg, candidate.rake.axial_deg, self._kappa(candidate, candidate.family.usable_depth_mm)[1])
+        rake = sheet.use(
+            "orthogonal rake",
+            "deg",
+            orthogonal_rake,
+            candidate.rake.radial_deg,
+            candidate.rake.axial_deg,
+            self._kappa(candidate, candidate.family.usable_depth_mm)[1],
+        )
         wanted = self._speed_wanted()
         hex_wanted, hex_least = self._chip_wanted(candidate)
         rough, finish = self._depths(candidate)
@@ -137,7 +67,10 @@ class Planner:
         width, diameter = self._fact("work.width_mm"), candidate.diameter_mm
         overlap = self._number("pass_overlap_mm")
         ratio = min(self._number("width_to_diameter_most"), self._tuning.get("width_to_diameter_most", math.inf))
-        one_ratio = min(self._practice["width_to_diameter_one_pass"].high, self._tuning.get("width_to_diameter_most", math.inf))
+        one_ratio = min(
+            self._practice["width_to_diameter_one_pass"].high,
+            self._tuning.get("width_to_diameter_most", math.inf),
+        )
         if self._fact("work.feature") == "slot":
             return Layout(1, min(width, diameter), 0.0, 0.0, 0.0, flush_arc(min(width, diameter), diameter), True)
         forced = bool(self._fact("require.one_pass") or self._fact("require.no_overlap_line"))
@@ -186,7 +119,10 @@ class Planner:
     # ------------------------------------------------------------------ speed and feed
     def _speed_wanted(self) -> float:
         start = self._fact("material.speed_start_m_min") * self._tuning.get("cutting_speed", 1.0)
-        low, high = self._fact("material.speed_min_m_min", 0.0), self._fact("material.speed_max_m_min", math.inf)
+        low, high = (
+            self._fact("material.speed_min_m_min", 0.0),
+            self._fact("material.speed_max_m_min", math.inf),
+        )
         kept = min(max(start, low), high) if self._tuning.get("cutting_speed", 1.0) >= 1.0 else min(start, high)
         return float(min(kept, self._tuning.get("cutting_speed_most_m_min", math.inf)))
 
@@ -208,7 +144,10 @@ class Planner:
 
     def _feed(self, chip: float, kappa: float, layout: Layout, teeth: int, speed: float) -> float:
         feed = feed_for_chip_thickness(chip, kappa, layout.arc.entry_deg, layout.arc.exit_deg)
-        feed = min(max(feed, self._tuning.get("feed_per_tooth_least_mm", 0.0)), self._tuning.get("feed_per_tooth_most_mm", math.inf))
+        feed = min(
+            max(feed, self._tuning.get("feed_per_tooth_least_mm", 0.0)),
+            self._tuning.get("feed_per_tooth_most_mm", math.inf),
+        )
         return float(min(feed, self._fact("machine.feed_max_mm_min", math.inf) / (teeth * speed)))
 
     # ------------------------------------------------------------------ load
@@ -220,15 +159,39 @@ class Planner:
         vc = sheet.use(f"cutting speed, {name}", "m/min", cutting_speed, speed, diameter)
         fz = self._feed(chip, top, layout, candidate.teeth, speed)
         vf = sheet.use(f"table feed, {name}", "mm/min", table_feed, fz, candidate.teeth, speed)
-        hex_ = sheet.use(f"largest chip thickness, {name}", "mm", maximum_chip_thickness, fz, top, arc.entry_deg, arc.exit_deg)
-        hm = sheet.use(f"mean chip thickness, {name}", "mm", mean_chip_thickness, fz, mean, width, diameter, arc.arc_deg)
+        hex_ = sheet.use(
+            f"largest chip thickness, {name}",
+            "mm",
+            maximum_chip_thickness,
+            fz,
+            top,
+            arc.entry_deg,
+            arc.exit_deg,
+        )
+        hm = sheet.use(
+            f"mean chip thickness, {name}", "mm", mean_chip_thickness, fz, mean, width, diameter, arc.arc_deg
+        )
         factor = self._force_factor(plan.orthogonal_rake_deg, vc, sheet, name)
         kc11, mc = self._fact("material.kc11_n_mm2"), self._fact("material.mc")
         kc = sheet.use(f"specific cutting force, {name}", "N/mm2", specific_cutting_force, kc11, mc, hm, factor)
         power = sheet.use(f"net power, {name}", "kW", net_power, depth, width, vf, kc)
         available = sheet.use(f"available net power, {name}", "kW", available_power, self._spindle.net_curve, speed)
         torque = sheet.use(f"mean torque, {name}", "N.m", torque_from_power, power, speed)
-        peak = sheet.use(f"peak load, {name}", "N.m", peak_torque, candidate.teeth, arc.entry_deg, arc.exit_deg, depth, fz, mean, diameter, kc11, mc, factor)
+        peak = sheet.use(
+            f"peak load, {name}",
+            "N.m",
+            peak_torque,
+            candidate.teeth,
+            arc.entry_deg,
+            arc.exit_deg,
+            depth,
+            fz,
+            mean,
+            diameter,
+            kc11,
+            mc,
+            factor,
+        )
         tooth = sheet.use(f"mean force on a tooth, {name}", "N", mean_tooth_force, depth, mean, hm, kc)
         thrust = peak.tangential_force_n * self._number("radial_to_tangential")
         parts = sheet.use(f"thrust, {name}", "N", force_components, thrust, mean)
@@ -250,13 +213,22 @@ class Planner:
     def _force_factor(self, rake: float, speed: float, sheet: Worksheet, name: str) -> float:
         low, high = self._number("rake_span_low_deg"), self._number("rake_span_high_deg")
         reference = self._practice["reference_rake_deg"].by[self._fact("material.iso_group")]
-        factor = sheet.use(f"rake factor, {name}", "", rake_factor, min(max(rake, low), high), reference, self._number("rake_change_per_deg"))
+        factor = sheet.use(
+            f"rake factor, {name}",
+            "",
+            rake_factor,
+            min(max(rake, low), high),
+            reference,
+            self._number("rake_change_per_deg"),
+        )
         slow = self._practice["speed_factor_slow"].by
         branch = SpeedBranch(slow["from_m_min"], slow["to_m_min"], slow["coefficient"], slow["exponent"])
         if speed >= branch.high_m_min:
             # The published factor lowers the force above 100 m/min; not taking it stays on the safe side.
             return float(factor)
-        return float(factor * sheet.use(f"speed factor, {name}", "", speed_factor, max(speed, branch.low_m_min), (branch,)))
+        return float(
+            factor * sheet.use(f"speed factor, {name}", "", speed_factor, max(speed, branch.low_m_min), (branch,))
+        )
 
     # ------------------------------------------------------------------ within the machine's power
     def _within_power(self, plan: Plan, rough: tuple[int, float], finish: tuple[int, float]) -> Plan:
@@ -271,7 +243,10 @@ class Planner:
         least_depth = max(2 * plan.hex_least_mm, self._number("finishing_depth_mm"))
         count = start_count
         while load.use_worn(wear) > allowed and depth * count / (count + 1) >= least_depth:
-            grow = max(count + 1, min(math.ceil(count * load.use_worn(wear) / allowed), int(depth * count / least_depth)))
+            grow = max(
+                count + 1,
+                min(math.ceil(count * load.use_worn(wear) / allowed), int(depth * count / least_depth)),
+            )
             count, depth = grow, depth * count / grow
             del plan.sheet.uses[mark:]
             load = self._load(plan, name, count, depth, chip)
@@ -311,15 +286,11 @@ class Planner:
         asked = self._fact("require.finish_ra_um")
         if radius <= 0 or asked is None:
             return None
-        run_out = self._practice["run_out_axial_mm"].by["cartridge" if candidate.pockets == "cartridge" else "fixed_finishing"]
+        run_out = self._practice["run_out_axial_mm"].by[
+            "cartridge" if candidate.pockets == "cartridge" else "fixed_finishing"
+        ]
         cusp = asked / 1000 * self._number("ra_to_rt") - run_out
         return math.sqrt(8 * radius * cusp) if cusp > 0 else None
 
     def _number(self, name: str) -> float:
         return float(self._practice[name].value)
-
-
-def plan_teeth(plan: Plan) -> list[float]:
-    """Return least, mean and most teeth in the cut."""
-    teeth = plan.sheet.use("plan.teeth_in_cut", "", teeth_in_cut, plan.candidate.teeth, plan.layout.arc.arc_deg)
-    return [float(teeth.least), teeth.mean, float(teeth.most)]

@@ -6,16 +6,17 @@ import math
 from collections.abc import Mapping
 from typing import TYPE_CHECKING
 
+from millreason.cut_plan import Load, plan_teeth
 from millreason.formulas.economics import cost_per_part, edges_per_batch
 from millreason.formulas.life import life_band
 from millreason.formulas.travel import pass_time
 from millreason.formulas.unit_power import Band, feed_factor, unit_power_check
-from millreason.plan import Load, plan_teeth
 from millreason.practice import PracticeValue
 from millreason.trace import PlanRecord, Step
 
 if TYPE_CHECKING:
-    from millreason.choice import Adviser, Outcome, Tried
+    from millreason.choice import Adviser
+    from millreason.outcome import Outcome, Tried
 
 MINUTES_PER_HOUR = 60.0
 
@@ -33,7 +34,7 @@ def make_plan_record(adviser: Adviser, out: Outcome, chosen: Tried) -> PlanRecor
     cut_time = sum(travel * load.layers * layout.passes / load.table_feed_mm_min for load in plan.loads)
     life = _life(out, chosen, practice)
     quantity = int(fact("require.quantity", 1))
-    ra = meter.roughness(plan)
+    ra = meter.quality.roughness(plan)
     teeth = plan_teeth(plan)
     pocket = fact("work.feature") == "closed_pocket"
     return PlanRecord(
@@ -66,12 +67,16 @@ def make_plan_record(adviser: Adviser, out: Outcome, chosen: Tried) -> PlanRecor
         entry_feed=_entry_feed(chosen, practice, pocket),
         tool_life_min=life.likely,
         parts_per_edge_set=life.likely / cut_time,
-        edge_sets_for_batch=math.ceil(edges_per_batch(cut_time, quantity, life.likely, chosen.candidate.teeth) / chosen.candidate.teeth),
+        edge_sets_for_batch=math.ceil(
+            edges_per_batch(cut_time, quantity, life.likely, chosen.candidate.teeth) / chosen.candidate.teeth
+        ),
         cost_per_part=_cost(out, chosen, practice, cut_time, life),
     )
 
 
-def _step(load: Load, out: Outcome, chosen: Tried, travel: float, back: float, practice: Mapping[str, PracticeValue]) -> Step:
+def _step(
+    load: Load, out: Outcome, chosen: Tried, travel: float, back: float, practice: Mapping[str, PracticeValue]
+) -> Step:
     passes = chosen.plan.layout.passes
     unit = _unit_power(load, out, practice)
     return Step(
@@ -131,19 +136,26 @@ def _entry_feed(chosen: Tried, practice: Mapping[str, PracticeValue], pocket: bo
         return f"ramp or helix {limit}, at {share * 100:.0f}% of the feed"
     radius = practice["roll_in_radius_to_diameter"].number * chosen.candidate.diameter_mm
     share = practice["feed_at_entry"].number
-    return f"roll in on an arc of about {radius:.0f} mm, or enter straight at {share * 100:.0f}% of the feed until engaged"
+    return (
+        f"roll in on an arc of about {radius:.0f} mm, or enter straight at {share * 100:.0f}% of the feed until engaged"
+    )
 
 
 def _life(out: Outcome, chosen: Tried, practice: Mapping[str, PracticeValue]) -> Band:
     """Return the life of the edges at the speed of the heaviest layer, from the life behind the start speeds."""
     basis, exponent = practice["tool_life_min"], practice["taylor_n"]
     start = out.situation.value("material.speed_start_m_min")
-    life = Band(basis.low, basis.value, basis.high)
-    taylor = Band(exponent.low, exponent.by["coated_carbide"], exponent.high)
-    return chosen.plan.sheet.use("life of the edges", "min", life_band, chosen.plan.heaviest.cutting_speed_m_min, start, life, taylor)
+    life = Band(basis.low or basis.number, basis.number, basis.high or basis.number)
+    likely = exponent.of("coated_carbide")
+    taylor = Band(exponent.low or likely, likely, exponent.high or likely)
+    return chosen.plan.sheet.use(
+        "life of the edges", "min", life_band, chosen.plan.heaviest.cutting_speed_m_min, start, life, taylor
+    )
 
 
-def _cost(out: Outcome, chosen: Tried, practice: Mapping[str, PracticeValue], cut_time: float, life: Band) -> list[float] | None:
+def _cost(
+    out: Outcome, chosen: Tried, practice: Mapping[str, PracticeValue], cut_time: float, life: Band
+) -> list[float] | None:
     """Return the cost of a part, low, likely and high, where the person gave a machine rate and an edge cost."""
     fact = out.situation.value
     rate, edge = fact("costs.machine_rate_per_h"), fact("costs.edge")
@@ -153,6 +165,14 @@ def _cost(out: Outcome, chosen: Tried, practice: Mapping[str, PracticeValue], cu
     change = fact("costs.edge_change_min", practice["edge_index_min"].number * chosen.candidate.teeth)
     result = []
     for minutes in (life.high, life.likely, life.low):
-        cost = cost_per_part(load, cut_time, change, edge * chosen.candidate.teeth, rate / MINUTES_PER_HOUR, max(minutes, cut_time), "fractional")
+        cost = cost_per_part(
+            load,
+            cut_time,
+            change,
+            edge * chosen.candidate.teeth,
+            rate / MINUTES_PER_HOUR,
+            max(minutes, cut_time),
+            "fractional",
+        )
         result.append(cost.total)
     return result

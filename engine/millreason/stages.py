@@ -8,8 +8,8 @@ from dataclasses import dataclass
 
 from millreason.facts import Situation, basis_record, subjects_of
 from millreason.inference import Fact, Firing, RuleEngine, make_engine
-from millreason.rulebook import PLACEHOLDER, Conclusion, Rule, RuleBook, compile_rules, describe
-from millreason.trace import ConditionRecord, FiringRecord, Plain
+from millreason.rulebook import PLACEHOLDER, Conclusion, RejectSpec, Rule, RuleBook, compile_rules, describe
+from millreason.trace import ConditionRecord, FiringRecord, LimitRecord, Plain
 from millreason.units import show
 from millreason.vocabulary import Vocabulary
 
@@ -36,7 +36,9 @@ class Stage:
         """Fire the rules on a situation and return one firing a rule, in canonical order."""
         if self._engine is None:
             return []
-        firings = self._engine.run(situation.for_inference(self._subjects), lambda rule, _: self._facts_made(rule, situation))
+        firings = self._engine.run(
+            situation.for_inference(self._subjects), lambda rule, _: self._facts_made(rule, situation)
+        )
         seen: dict[str, Firing] = {}
         for firing in firings:
             seen.setdefault(firing.rule, firing)
@@ -53,17 +55,36 @@ class Stage:
     def record(self, firing: Firing, situation: Situation, system: str, about: str = "") -> FiringRecord:
         """Return the record of a firing, its texts filled with the values of the situation."""
         rule = self.rules[firing.rule]
-        conditions = [self._condition(rule, fact, test, situation) for fact, test in zip(firing.facts, _tests(rule), strict=True)]
+        conditions = [
+            self._condition(rule, fact, test, situation) for fact, test in zip(firing.facts, _tests(rule), strict=True)
+        ]
         return FiringRecord(
             rule.id, rule.name.replace("-", " "), rule.stage, fill(rule.says, situation, self._vocabulary, system),
             fill(rule.why, situation, self._vocabulary, system), conditions, conclusion_text(rule.then),
             basis_record(rule.basis), about, rule.id in self._book.from_shop,
         )  # fmt: skip
 
+    def why(self, rule: str, situation: Situation, system: str) -> str:
+        """Return a rule's reason, filled with the values of the situation."""
+        return fill(self.rules[rule].why, situation, self._vocabulary, system)
+
+    def limit(self, rule: str, spec: RejectSpec, situation: Situation, system: str) -> LimitRecord:
+        """Return the record of a limit that a rule names."""
+        against = situation.value(spec.against) if isinstance(spec.against, str) else spec.against
+        value = plain_value(situation.value(spec.value))
+        return LimitRecord(
+            spec.limit, self.why(rule, situation, system), value, plain_value(against), rule, list(spec.relax)
+        )
+
     def _condition(self, rule: Rule, fact: Fact, test: str, situation: Situation) -> ConditionRecord:
         record = situation.record(fact.attribute)
         if fact.kind != "value":
-            return ConditionRecord(fact.attribute, test, None if fact.kind == "missing" else fact.value, record.origin if record else "absent")
+            return ConditionRecord(
+                fact.attribute,
+                test,
+                None if fact.kind == "missing" else fact.value,
+                record.origin if record else "absent",
+            )
         return ConditionRecord(fact.attribute, test, fact.value, record.origin if record else "concluded")
 
 

@@ -69,9 +69,7 @@ def line(start: Point, end: Point, colour: str = INK, width: float = 1, dash: st
 def arrow_head(start: Point, end: Point, colour: str = INK) -> str:
     """Draw the head of an arrow that ends at `end` and comes from `start`."""
     angle = math.atan2(end[1] - start[1], end[0] - start[0])
-    barbs = (
-        (end[0] - 9 * math.cos(angle + turn), end[1] - 9 * math.sin(angle + turn)) for turn in (0.35, -0.35)
-    )
+    barbs = ((end[0] - 9 * math.cos(angle + turn), end[1] - 9 * math.sin(angle + turn)) for turn in (0.35, -0.35))
     return f'<polygon points="{points_text((end, *barbs))}" fill="{colour}"/>'
 
 
@@ -80,9 +78,7 @@ def arrow(start: Point, end: Point, colour: str = INK, width: float = 1.5) -> st
     return line(start, end, colour, width) + arrow_head(start, end, colour)
 
 
-def circle(
-    centre: Point, radius: float, stroke: str, fill: str = "none", width: float = 1.5, dash: str = ""
-) -> str:
+def circle(centre: Point, radius: float, stroke: str, fill: str = "none", width: float = 1.5, dash: str = "") -> str:
     """Draw a circle."""
     place = f'cx="{number(centre[0])}" cy="{number(centre[1])}" r="{number(radius)}"'
     return f'<circle {place} fill="{fill}" {_stroke(stroke, width, dash)}/>'

@@ -84,7 +84,24 @@ _QUANTITY = re.compile(r"\s*([-+]?\d[\d ,_]*(?:[.,]\d+)?(?:[eE][-+]?\d+)?|[-+]?[
 _FRACTION = re.compile(r"\s*(?:(\d+)[ -])?(\d+)/(\d+)\s*(in|inch|inches|\")\s*\Z")
 
 HARDNESS_SCALES = ("HB", "HRC", "HV")
-INCH_UNITS = frozenset({"in", "ft", "thou", "uin", "lb", "lbf", "hp", "lbf.ft", "lbf.in", "sfm", "ft/min", "ipm", "in/min", "psi"})
+INCH_UNITS = frozenset(
+    {
+        "in",
+        "ft",
+        "thou",
+        "uin",
+        "lb",
+        "lbf",
+        "hp",
+        "lbf.ft",
+        "lbf.in",
+        "sfm",
+        "ft/min",
+        "ipm",
+        "in/min",
+        "psi",
+    }
+)
 
 
 class QuantityError(MillreasonError):
@@ -100,11 +117,11 @@ class Quantity:
 
 
 @cache
-def registry() -> UnitRegistry:
+def registry() -> UnitRegistry[float]:
     """Return the registry of the trade's units."""
     from pint import UnitRegistry as Registry
 
-    units: UnitRegistry = Registry(None)
+    units: UnitRegistry[float] = Registry(None)
     units.load_definitions([line for line in _DEFINITIONS.splitlines() if line])
     return units
 
@@ -168,7 +185,19 @@ _INCH_SHOWN = {
     "mm": ("in", 4), "um": ("uin", 0), "kg": ("lb", 1), "N": ("lbf", 0), "kW": ("hp", 2), "N.m": ("lbf.ft", 1),
     "m/min": ("sfm", 0), "mm/min": ("in/min", 1), "cm3/min": ("in3/min", 2), "MPa": ("psi", 0),
 }  # fmt: skip
-_DECIMALS = {"mm": 3, "um": 2, "kg": 2, "N": 0, "kW": 2, "N.m": 1, "rpm": 0, "m/min": 0, "mm/min": 0, "min": 2, "deg": 1}
+_DECIMALS = {
+    "mm": 3,
+    "um": 2,
+    "kg": 2,
+    "N": 0,
+    "kW": 2,
+    "N.m": 1,
+    "rpm": 0,
+    "m/min": 0,
+    "mm/min": 0,
+    "min": 2,
+    "deg": 1,
+}
 _CUBIC_INCH_IN_CM3 = 16.387064
 
 

@@ -50,7 +50,11 @@ class Vocabulary(BaseModel):
     @cached_property
     def job_keys(self) -> dict[str, str]:
         """Job-file keys ('work.width') and the facts they set ('work.width_mm')."""
-        return {definition.key or _without_unit(name, definition.unit): name for name, definition in self.facts.items() if definition.from_ == "job"}
+        return {
+            definition.key or _without_unit(name, definition.unit): name
+            for name, definition in self.facts.items()
+            if definition.from_ == "job"
+        }
 
     @cached_property
     def picks(self) -> dict[str, FactDefinition]:

@@ -28,7 +28,14 @@ class Worksheet:
     def calculations(self) -> list[Calculation]:
         """Return every use as a record."""
         return [
-            Calculation(result_of, _name(formula), _named(formula, inputs), _shown(result), unit, list(references(formula)))
+            Calculation(
+                result_of,
+                _name(formula),
+                _named(formula, inputs),
+                _shown(result),
+                unit,
+                list(references(formula)),
+            )
             for result_of, formula, inputs, result, unit in self.uses
         ]
 

@@ -22,7 +22,15 @@ Model = TypeVar("Model", bound=BaseModel)
 
 _LOADER = getattr(yaml, "CSafeLoader", yaml.SafeLoader)
 _NUMBER = re.compile(r"[-+]?(0|[1-9]\d*)(\.\d+)?([eE][-+]?\d+)?\Z")
-_WORDS: dict[str, Any] = {"true": True, "false": False, "yes": True, "no": False, "null": None, "~": None, "": None}
+_WORDS: dict[str, Any] = {
+    "true": True,
+    "false": False,
+    "yes": True,
+    "no": False,
+    "null": None,
+    "~": None,
+    "": None,
+}
 
 
 @dataclass(frozen=True)
@@ -111,13 +119,15 @@ class _Reader:
         return data
 
     def _value(self, event: yaml.Event, key: Key) -> Any:
-        line = event.start_mark.line + 1
+        line = _line(event)
         self._lines.setdefault(key, line)
         shown = ".".join(str(part) for part in key) or "file"
         if isinstance(event, yaml.AliasEvent) or getattr(event, "anchor", None):
             self._stop(event, shown, "uses an anchor or alias (& or *), which is not read here. Write it out.")
-        if getattr(event, "tag", None) and not (isinstance(event, yaml.ScalarEvent) and event.tag == "!"):
-            self._stop(event, shown, f"has the tag {event.tag!r}, which is not read here. Remove it.")
+        if getattr(event, "tag", None) and not (
+            isinstance(event, yaml.ScalarEvent) and getattr(event, "tag", None) == "!"
+        ):
+            self._stop(event, shown, f"has the tag {getattr(event, 'tag', '')!r}, which is not read here. Remove it.")
         if len(key) > MAX_DEPTH:
             self._stop(event, shown, f"is nested deeper than {MAX_DEPTH} levels.")
         if isinstance(event, yaml.ScalarEvent):
@@ -136,9 +146,9 @@ class _Reader:
         entries: dict[str, Any] = {}
         while not isinstance(event := next(self._events), yaml.MappingEndEvent):
             if not isinstance(event, yaml.ScalarEvent):
-                self._stop(event, ".".join(map(str, key)), "has a key that is not a plain word.")
-            name = event.value
-            line = event.start_mark.line + 1
+                raise self._stopped(event, ".".join(map(str, key)), "has a key that is not a plain word.")
+            name = str(event.value)
+            line = _line(event)
             inner = (*key, name)
             if name in entries:
                 first = self._lines[inner]
@@ -160,10 +170,10 @@ class _Reader:
         if re.search(r"[.eE]", text):
             number = float(text)
             if number in (float("inf"), float("-inf")):
-                self._add(event.start_mark.line + 1, shown, f"{text} is too large for a number.")
+                self._add(_line(event), shown, f"{text} is too large for a number.")
             return number
         if len(text) > 18:
-            self._add(event.start_mark.line + 1, shown, f"{text} is too large for a number. Quote it if it is text.")
+            self._add(_line(event), shown, f"{text} is too large for a number. Quote it if it is text.")
             return text
         return int(text)
 
@@ -171,8 +181,15 @@ class _Reader:
         self._findings.append(Finding(self._name, line, label, message))
 
     def _stop(self, event: yaml.Event, label: str, message: str) -> None:
-        self._add(event.start_mark.line + 1, label, message)
-        raise DataError(self._findings)
+        raise self._stopped(event, label, message)
+
+    def _stopped(self, event: yaml.Event, label: str, message: str) -> DataError:
+        self._add(_line(event), label, message)
+        return DataError(self._findings)
+
+
+def _line(event: yaml.Event) -> int:
+    return event.start_mark.line + 1 if event.start_mark is not None else 1
 
 
 def read_model(document: Document, model: type[Model]) -> Model:

@@ -1,0 +1,110 @@
+"""The search: complete tools best first, each with its plan and judgement, until nothing left can beat the best."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Mapping
+from typing import TYPE_CHECKING, Any
+
+from millreason.candidates import Candidate, Catalogue
+from millreason.measures import BODY_FACTS, CUT_FACTS, Meter
+from millreason.outcome import Outcome, Tried
+from millreason.own_cutters import own_candidates, own_cutters
+from millreason.plan import Planner
+from millreason.spindle import Spindle
+from millreason.trace import LimitRecord
+
+if TYPE_CHECKING:
+    from millreason.choice import Adviser
+
+RUNNERS_UP = 3
+EXTRA_TRIES = 12
+Kin = tuple[Any, ...]
+
+
+class Search:
+    """Tries the candidates of one job and writes what stands and what is rejected into the outcome."""
+
+    def __init__(self, adviser: Adviser, out: Outcome, spindle: Spindle) -> None:
+        knowledge = adviser.knowledge
+        self._adviser = adviser
+        self._out = out
+        self._interface = knowledge.interfaces[out.situation.value("machine.interface")]
+        self._meter = Meter(out.situation, knowledge.practice, knowledge.cutters, self._interface, spindle)
+        self._planner = Planner(out.situation, out.tuning.values, knowledge.practice, spindle)
+        out.spindle, out.meter = spindle, self._meter
+
+    def run(self, only: Mapping[str, str]) -> None:
+        """Try candidates, best evidence first, with the options in `only`."""
+        out = self._out
+        dead: set[Kin] = set()
+        for candidate in self._candidates():
+            if self._settled(candidate):
+                break
+            if any(candidate.options.get(pick, option) != option for pick, option in only.items()):
+                continue
+            out.candidates_possible += 1
+            if dead.isdisjoint(_kin(candidate)):
+                tried = self._try(candidate)
+                (out.rejected if tried.limits else out.stands).append(tried)
+                dead.update(self._ruled_out_with(tried))
+        out.stands.sort(key=lambda tried: -tried.standing)
+
+    def _candidates(self) -> Iterator[Candidate]:
+        out, cutters = self._out, self._adviser.knowledge.cutters
+        assert out.ledgers is not None
+        offered = self._interface.mountings.options
+        own = own_cutters(out.job, self._adviser.knowledge)
+        if own:
+            return iter(own_candidates(own, cutters, out.ledgers, offered))
+        return Catalogue(cutters, out.ledgers, out.job.units, offered).best_first()
+
+    def _settled(self, candidate: Candidate) -> bool:
+        """Whether no candidate from here on can beat the best, and enough runners-up are known."""
+        stands = self._out.stands
+        if not stands:
+            return False
+        best = max(tried.standing for tried in stands)
+        if candidate.evidence > best:
+            return False
+        kinds = {(tried.candidate.family.id, tried.candidate.size.label) for tried in stands}
+        beyond = sum(1 for tried in stands + self._out.rejected if tried.candidate.evidence <= best)
+        return len(kinds) > RUNNERS_UP or beyond >= EXTRA_TRIES
+
+    def _try(self, candidate: Candidate) -> Tried:
+        out, stage = self._out, self._adviser.stages["judge"]
+        plan = self._planner.plan(candidate, out.separate["direction"])
+        facts = {**self._meter.picks(candidate, out.separate), **self._meter.measure(plan)}
+        situation = out.situation.with_facts(facts, "plan")
+        limits = [LimitRecord("cutter_on_hand", entry.why, None, None, entry.rule, []) for entry in candidate.blocked]
+        reasons, lowered = [], 0.0
+        firings = stage.run(situation)
+        for firing in firings:
+            then = stage.rules[firing.rule].then
+            if then.reject:
+                limits.append(stage.limit(firing.rule, then.reject, situation, out.job.units))
+            if then.lower:
+                lowered += self._adviser.knowledge.strengths[then.lower].weight
+                why = stage.why(firing.rule, situation, out.job.units)
+                reasons.append(f"{why} ({firing.rule}, {then.lower})")
+        return Tried(candidate, plan, facts, tuple(limits), lowered, tuple(reasons), tuple(firings), situation)
+
+    def _ruled_out_with(self, tried: Tried) -> Iterator[Kin]:
+        """Yield what else need not be tried: tools that share everything the rejecting rules looked at."""
+        rules = self._adviser.stages["judge"].rules
+        body, cut, _ = _kin(tried.candidate)
+        rough = tried.plan.loads[0].name == "roughing"
+        for limit in tried.limits:
+            if limit.rule not in rules:
+                continue
+            looked_at = {fact for fact in rules[limit.rule].when if fact.startswith(("plan.", "pick."))}
+            if looked_at <= BODY_FACTS:
+                yield body
+            elif rough and looked_at <= CUT_FACTS:
+                yield cut
+
+
+def _kin(candidate: Candidate) -> tuple[Kin, Kin, Kin]:
+    """Return what a candidate shares with others: its body; its cut; and itself."""
+    body = (candidate.family.id, candidate.size.label, candidate.own.id if candidate.own else None)
+    cut = (*body, candidate.pitch, candidate.rake.axial_deg, candidate.rake.radial_deg, candidate.edge)
+    return body, cut, (*cut, candidate.corner.corner, candidate.wiper)
