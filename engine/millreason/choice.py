@@ -26,12 +26,16 @@ from millreason.vocabulary import Vocabulary, load_vocabulary
 
 SEPARATE_PICKS = ("hand", "direction", "fluid", "application", "spacing")
 RUNNERS_UP = 3
-EXTRA_TRIES = 12
 _STAGES = ("assume", "appraise", "weigh", "size", "judge", "caution")
 
 
 class Adviser:
-    """The program with its knowledge and rules loaded; it answers any number of jobs."""
+    """The program with its knowledge and rules loaded; it answers any number of jobs.
+
+    `runners_up` is how many bodies of another kind or size the search looks for behind the best.
+    """
+
+    runners_up = RUNNERS_UP
 
     def __init__(
         self,

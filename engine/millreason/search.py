@@ -16,7 +16,6 @@ from millreason.trace import LimitRecord
 if TYPE_CHECKING:
     from millreason.choice import Adviser
 
-RUNNERS_UP = 3
 EXTRA_TRIES = 12
 Kin = tuple[Any, ...]
 
@@ -37,7 +36,7 @@ class Search:
         """Try candidates, best evidence first, with the options in `only`."""
         out = self._out
         dead: set[Kin] = set()
-        for candidate in self._candidates():
+        for candidate in self._candidates(only):
             if self._settled(candidate):
                 break
             if any(candidate.options.get(pick, option) != option for pick, option in only.items()):
@@ -49,14 +48,14 @@ class Search:
                 dead.update(self._ruled_out_with(tried))
         out.stands.sort(key=lambda tried: -tried.standing)
 
-    def _candidates(self) -> Iterator[Candidate]:
+    def _candidates(self, only: Mapping[str, str]) -> Iterator[Candidate]:
         out, cutters = self._out, self._adviser.knowledge.cutters
         assert out.ledgers is not None
         offered = self._interface.mountings.options
         own = own_cutters(out.job, self._adviser.knowledge)
         if own:
             return iter(own_candidates(own, cutters, out.ledgers, offered))
-        return Catalogue(cutters, out.ledgers, out.job.units, offered).best_first()
+        return Catalogue(cutters, out.ledgers, out.job.units, offered, only).best_first()
 
     def _settled(self, candidate: Candidate) -> bool:
         """Whether no candidate from here on can beat the best, and enough runners-up are known."""
@@ -68,7 +67,7 @@ class Search:
             return False
         kinds = {(tried.candidate.family.id, tried.candidate.size.label) for tried in stands}
         beyond = sum(1 for tried in stands + self._out.rejected if tried.candidate.evidence <= best)
-        return len(kinds) > RUNNERS_UP or beyond >= EXTRA_TRIES
+        return len(kinds) > self._adviser.runners_up or beyond >= EXTRA_TRIES
 
     def _try(self, candidate: Candidate) -> Tried:
         out, stage = self._out, self._adviser.stages["judge"]
