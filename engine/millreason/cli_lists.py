@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING, Any
 
 import click
 
-from millreason.console import SHOP, guarded, load, say
+from millreason.console import BAD_INPUT, SHOP, guarded, load, say
 from millreason.errors import MillreasonError, did_you_mean
 
 if TYPE_CHECKING:
@@ -23,13 +23,21 @@ def rules() -> None:
 
 
 @rules.command("check")
+@click.option("--notes", is_flag=True, help="Show the notes too: trade-offs, repetitions and what little speaks for.")
 @SHOP
 @guarded
-def rules_check(shop: Path | None) -> None:
-    """Load every rule and all knowledge, and report everything that is wrong."""
-    adviser = load(shop)
-    topics = set(adviser.rulebook.topics.values())
-    say(f"{len(adviser.rulebook.rules)} rules in {len(topics)} topics: no findings.")
+def rules_check(notes: bool, shop: Path | None) -> None:
+    """Load every rule and all knowledge, check them as a whole, and report everything that is wrong.
+
+    The exit code is 2 if there is an error.
+    """
+    from millreason.rule_audit import audit
+
+    result = audit(load(shop))
+    for line in result.lines(notes):
+        say(line)
+    if not result.sound:
+        raise SystemExit(BAD_INPUT)
 
 
 @rules.command("list")
@@ -41,9 +49,7 @@ def rules_list(topic: str | None, shop: Path | None) -> None:
     book = load(shop).rulebook
     topics = sorted(set(book.topics.values()))
     if topic is not None and topic not in topics:
-        raise MillreasonError(
-            f"unknown topic {topic!r}.{did_you_mean(topic, topics)} Topics: {', '.join(topics)}."
-        )
+        raise MillreasonError(f"unknown topic {topic!r}.{did_you_mean(topic, topics)} Topics: {', '.join(topics)}.")
     for name in topics if topic is None else [topic]:
         say(f"{name}:")
         for rule in book.rules.values():
@@ -175,9 +181,7 @@ def machines_show(name: str, shop: Path | None) -> None:
     """Show every figure of one machine."""
     known = load(shop).knowledge.machines
     if name not in known:
-        raise MillreasonError(
-            f"unknown machine {name!r}.{did_you_mean(name, known)} See 'millreason machines list'."
-        )
+        raise MillreasonError(f"unknown machine {name!r}.{did_you_mean(name, known)} See 'millreason machines list'.")
     _show(known[name].model_dump(by_alias=True, exclude_none=True))
 
 
