@@ -1,4 +1,4 @@
-"""Complete tools in the order of what speaks for them: body, size, pitch, rake, corner and wiper in every combination."""
+"""Complete tools, best evidence first: body, size, pitch, rake, corner and wiper in every combination."""
 
 from __future__ import annotations
 
@@ -6,6 +6,7 @@ import heapq
 import math
 from collections.abc import Iterable, Iterator, Mapping
 from dataclasses import dataclass
+from functools import cached_property
 from itertools import product
 from typing import TYPE_CHECKING, NamedTuple
 
@@ -155,6 +156,15 @@ class _Parts(NamedTuple):
     score: float
 
 
+# Pitches, rakes with their edges, corners and wipers, each with its score.
+_Pools = tuple[
+    "list[tuple[float, str]]",
+    "list[tuple[float, RakeOption, str]]",
+    "list[tuple[float, CornerOption]]",
+    "list[tuple[float, str]]",
+]
+
+
 class Catalogue:
     """All tools that exist for a job, tried best first; `only` keeps those that have the options it names."""
 
@@ -173,6 +183,7 @@ class Catalogue:
         self._sizes = [size for size in cutters.sizes if size.series == series]
         self._interface_mountings = frozenset(mountings)
         self._mounting_of: dict[tuple[str, str], str | None] = {}
+        self._best_mounting: dict[tuple[str, ...], str | None] = {}
 
     def best_first(self) -> Iterator[Candidate]:
         """Yield every candidate whose parts are not ruled out, best evidence first."""
@@ -210,10 +221,10 @@ class Catalogue:
             and self._mounting(family, size) is not None
         ]
         sizes.sort(key=lambda entry: (-entry[0], entry[1].nominal_mm))
-        parts = sorted(self._parts(family), key=lambda entry: -entry.score)
-        if not sizes or not parts:
+        pools = self._pools(family)
+        if not sizes or not all(pools):
             return None
-        return _Lane(place, family, sum(score or 0.0 for score in body), sizes, parts)
+        return _Lane(place, family, sum(score or 0.0 for score in body), sizes, pools)
 
     def _score(self, pick: str, option: str) -> float | None:
         if not self._wanted(pick, option):
@@ -225,8 +236,8 @@ class Catalogue:
     def _wanted(self, pick: str, option: str) -> bool:
         return self._only.get(pick, option) == option
 
-    def _parts(self, family: CutterFamily) -> Iterator[_Parts]:
-        # What is ruled out is left out before the combining: most of the combinations never arise.
+    def _pools(self, family: CutterFamily) -> _Pools:
+        """Return the options of each part that are not ruled out, with their scores."""
         wipers = self._open("wiper", ("none", "one", "all") if family.wipers else ("none",))
         pitches = self._open("pitch", family.pitches)
         corners = [
@@ -238,8 +249,7 @@ class Catalogue:
             if (rake_score := self._score("rake", rake.rake)) is not None
             for edge_score, edge in self._open("edge", rake.edges)
         ]
-        for (a, pitch), (b, rake, edge), (c, corner), (d, wiper) in product(pitches, rakes, corners, wipers):
-            yield _Parts(pitch, rake, edge, corner, wiper, a + b + c + d)
+        return pitches, rakes, corners, wipers
 
     def _open(self, pick: str, options: Iterable[str]) -> list[tuple[float, str]]:
         return [(score, option) for option in options if (score := self._score(pick, option)) is not None]
@@ -247,9 +257,12 @@ class Catalogue:
     def _mounting(self, family: CutterFamily, size: BodySize) -> str | None:
         key = family.id, size.label
         if key not in self._mounting_of:
-            made = dict.fromkeys(row.mounting for row in self._cutters.mountings_for(family, size))
-            fits = [name for name in made if name in self._interface_mountings and self._wanted("mounting", name)]
-            self._mounting_of[key] = self._ledgers.best("mounting", fits)
+            made = self._cutters.mountings_for(family, size)
+            offered = (row.mounting for row in made if row.mounting in self._interface_mountings)
+            fits = tuple(name for name in dict.fromkeys(offered) if self._wanted("mounting", name))
+            if fits not in self._best_mounting:
+                self._best_mounting[fits] = self._ledgers.best("mounting", fits)
+            self._mounting_of[key] = self._best_mounting[fits]
         return self._mounting_of[key]
 
     def _candidate(self, lane: _Lane, row: int, column: int) -> Candidate | None:
@@ -269,15 +282,29 @@ class Catalogue:
         )  # fmt: skip
 
 
-@dataclass(frozen=True)
 class _Lane:
     """All sizes and parts of one family, each sorted best first."""
 
-    place: int
-    family: CutterFamily
-    body_score: float
-    sizes: list[tuple[float, BodySize]]
-    parts: list[_Parts]
+    def __init__(
+        self, place: int, family: CutterFamily, body_score: float, sizes: list[tuple[float, BodySize]], pools: _Pools
+    ) -> None:
+        self.place = place
+        self.family = family
+        self.sizes = sizes
+        self._body_score = body_score
+        self._pools = pools
+        self._best_parts: float = sum(max(entry[0] for entry in pool) for pool in pools)
+
+    @cached_property
+    def parts(self) -> list[_Parts]:
+        """Every combination of parts; made only when the lane's best candidate comes up."""
+        made = [
+            _Parts(pitch, rake, edge, corner, wiper, a + b + c + d)
+            for (a, pitch), (b, rake, edge), (c, corner), (d, wiper) in product(*self._pools)
+        ]
+        return sorted(made, key=lambda entry: -entry.score)
 
     def score(self, row: int, column: int) -> float:
-        return self.body_score + self.sizes[row][0] + self.parts[column].score
+        """Return the evidence for one candidate of the lane."""
+        parts = self.parts[column].score if column else self._best_parts
+        return self._body_score + self.sizes[row][0] + parts
