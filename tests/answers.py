@@ -171,9 +171,7 @@ FIRINGS = [
         "The edge enters softly and the chip is thinner for the same feed.",
         [
             ConditionRecord("work.feature", "work.feature is open_face", "open_face", "assumed"),
-            ConditionRecord(
-                "setup.stiffness", "setup.stiffness is one of normal, stiff", "normal", "concluded"
-            ),
+            ConditionRecord("setup.stiffness", "setup.stiffness is one of normal, stiff", "normal", "concluded"),
         ],
         "for kappa 45, strong",
         BOOK,

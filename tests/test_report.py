@@ -10,10 +10,13 @@ import pytest
 import yaml
 
 import answers
+from millreason.knowledge import data_root
 from millreason.report import FORMS, Form, render, schema
 from millreason.report.markdown import escape_markdown
 from millreason.report.page import Item, Items, Section
+from millreason.report.words import job_key
 from millreason.trace import Answer
+from millreason.vocabulary import load_vocabulary
 
 ANSWERS = {
     "recommended": answers.recommended,
@@ -100,9 +103,7 @@ def test_every_rule_that_fired_is_told_with_facts_origin_conclusion_and_ground(f
         for words in (firing.rule, firing.says, firing.conclusion, firing.why):
             assert words in text
     assert "[given: mill scale]" in text or "work.skin is mill_scale [given]" in text
-    assert "recalled: kienzle-victor-1957, table of constants, the shop's own rule" in text.replace(
-        "&#39;", "'"
-    )
+    assert "recalled: kienzle-victor-1957, table of constants, the shop's own rule" in text.replace("&#39;", "'")
     assert "setup.stiffness is one of normal, stiff [concluded" in text
 
 
@@ -189,9 +190,7 @@ def test_inches_come_first_with_metric_in_brackets() -> None:
 
 def test_lead_and_kappa_are_always_both_printed() -> None:
     square = replace(answers.PICKS, lead_deg=0.0, kappa_deg=90.0)
-    rounded = replace(
-        answers.PICKS, lead_deg=None, kappa_deg=34.0, kappa_note="34 degrees at the top", corner="round"
-    )
+    rounded = replace(answers.PICKS, lead_deg=None, kappa_deg=34.0, kappa_note="34 degrees at the top", corner="round")
     for picks, words in (
         (answers.PICKS, "lead 45 deg (kappa 45 deg)"),
         (square, "lead 0 deg (kappa 90 deg)"),
@@ -202,20 +201,18 @@ def test_lead_and_kappa_are_always_both_printed() -> None:
     assert "round insert: kappa follows the depth" in told
 
 
-def test_cautions_come_gravest_first() -> None:
+def test_cautions_come_gravest_first_and_notes_are_named_on_the_sheet() -> None:
     text = render(answers.recommended(), "terminal")
-    assert (
-        text.index("warning: Check the pocket")
-        < text.index("caution: Set the first")
-        < text.index("note: Close")
-    )
+    assert text.index("warning: The cutter nearly") < text.index("caution: Set the first") < text.index("Also noted")
+    assert "Also noted under Cautions: chip housekeeping." in text
+    full = render(answers.recommended(), "terminal", full=True)
+    assert full.index("warning: The cutter", full.index("CAUTIONS")) < full.index("note: Hot chips fly off")
 
 
 def test_the_stop_sign_gives_the_load_of_the_heaviest_step() -> None:
     # 6.93 / 8.51 and 5.33 / 8.51 in the example
-    assert (
-        "past 81 % of what the spindle has at this speed: the edges are worn (63 % with sharp edges)"
-        in opening(render(answers.recommended(), "terminal"))
+    assert "past 81 % of what the spindle has at this speed: the edges are worn (63 % with sharp edges)" in opening(
+        render(answers.recommended(), "terminal")
     )
 
 
@@ -238,12 +235,18 @@ def test_buying_specification_speaks_iso_13399() -> None:
     assert "| BS | wiper edge length | at least 0.9 mm (feed per revolution) |" in text
 
 
+def test_job_keys_are_those_that_the_job_reader_takes() -> None:
+    vocabulary = load_vocabulary(data_root())
+    for key, fact in vocabulary.job_keys.items():
+        assert job_key(fact) == key
+
+
 # ---------------------------------------------------------------------- terminal
 def test_the_short_form_is_a_page_and_fits_its_width() -> None:
     text = render(answers.recommended(), "terminal", width=80)
     lines = text.splitlines()
     assert max(map(len, lines)) <= 80
-    assert len(lines) <= 90
+    assert len(lines) <= 80
     assert "SETUP SHEET" in text
     assert "EVERY RULE THAT FIRED" not in text
 

@@ -152,9 +152,7 @@ def _entry_and_exit(stage: _Stage) -> list[str]:
 
 def _rim_label(view: CutView, at: Point, word: str, angle: float, gap: float, below: float) -> str:
     y = at[1] + (18 if below > 0 else -12)
-    return svg.text(
-        (at[0] + 12, y), f"{word} {plain(angle, 1)}°, overhang {show(gap, 'mm', view.units)}", colour=SIGN
-    )
+    return svg.text((at[0] + 12, y), f"{word} {plain(angle, 1)}°, overhang {show(gap, 'mm', view.units)}", colour=SIGN)
 
 
 def _width_of_cut(stage: _Stage) -> list[str]:
@@ -278,11 +276,7 @@ def _straight_section(angles: EdgeAngles) -> list[str]:
     work = ((10, _FLOOR), foot, shoulder, (_WORK_END, _FLOOR - rise), (_WORK_END, 165.0), (10, 165.0))
     insert = (foot, tip, (tip[0] - 42, tip[1] - 14), (_FOOT - 42, _FLOOR - 6))
     mark = (_FOOT + 34 * math.cos(kappa), _FLOOR - 34 * math.sin(kappa))
-    named = (
-        ""
-        if angles.lead_deg is None
-        else f"lead {plain(angles.lead_deg, 1)}°, kappa {plain(angles.kappa_deg, 1)}°"
-    )
+    named = "" if angles.lead_deg is None else f"lead {plain(angles.lead_deg, 1)}°, kappa {plain(angles.kappa_deg, 1)}°"
     return [
         svg.polygon(work, INK, CUT),
         svg.polygon(insert, TOOL, GLASS),

@@ -87,9 +87,7 @@ def make_page(answer: Answer, more: Iterable[Section] = ()) -> Page:
 
 def footer(answer: Answer) -> tuple[str, ...]:
     """Return who made the answer from what, and who decides."""
-    counts = ", ".join(
-        f"{number} {kind.replace('_', ' ')}" for kind, number in sorted(answer.provenance.items())
-    )
+    counts = ", ".join(f"{number} {kind.replace('_', ' ')}" for kind, number in sorted(answer.provenance.items()))
     made = (
         f"millreason {answer.version}, engine {answer.engine}, "
         f"rules and knowledge {answer.knowledge_hash[:16]}, from {clean(answer.file)}"

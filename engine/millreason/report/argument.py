@@ -7,6 +7,7 @@ from collections.abc import Sequence
 from millreason import charts
 from millreason.report.opening import questions
 from millreason.report.page import (
+    Block,
     Fields,
     Fold,
     Gallery,
@@ -18,6 +19,7 @@ from millreason.report.page import (
     Table,
     present,
     section,
+    without_empty_columns,
 )
 from millreason.report.record import record_sections
 from millreason.report.sheet import TONES, Line, by_severity, steps_table
@@ -27,11 +29,13 @@ from millreason.report.words import (
     count,
     fact,
     fact_words,
+    job_key,
     limit_number,
     number_words,
     option,
     pick_name,
     pick_option,
+    pick_words,
     recommends,
     value_text,
 )
@@ -43,6 +47,7 @@ _ASSUMED = (
     "and run it again."
 )
 
+_MAIN_PICKS = ("cutter_class", "diameter_mm", "kappa_deg", "rake", "pitch")
 _LINES: tuple[Line, ...] = (
     ("feed per revolution fn", "mm", lambda step: step.feed_per_rev_mm),
     ("largest chip thickness hex", "mm", lambda step: step.hex_mm),
@@ -63,7 +68,9 @@ _LINES: tuple[Line, ...] = (
 
 def argument_sections(answer: Answer) -> list[Section]:
     """Return everything that follows the opening, in the order of a report; empty parts are left out."""
-    asked = questions(answer, "Worth asking") if answer.questions and answer.verdict != "ask" else None
+    held = {question.fact for question in answer.conditions}
+    open_ones = [question for question in answer.questions if question.fact not in held]
+    asked = questions(answer, "Worth asking") if open_ones and answer.verdict != "ask" else None
     made = [
         _why(answer),
         _lost(answer),
@@ -83,28 +90,43 @@ def _why(answer: Answer) -> Section | None:
     if not recommends(answer):
         return None
     spoken = [ledger for ledger in answer.trace.ledgers if any(entry.evidence for entry in ledger.options)]
-    told = [pair for ledger in spoken if (pair := _chosen(ledger, answer.units)) is not None]
+    told = [item for ledger in spoken if (item := _chosen(ledger, answer.units)) is not None]
     robust = Say(clean(answer.robustness)) if answer.robustness else None
     folds = [Fold(f"Ledger: {pick_name(ledger.pick)}", (_ledger(ledger, answer.units),)) for ledger in spoken]
-    blocks = present(Items(tuple(full for full, _ in told)), robust, *folds)
-    brief = present(Items(tuple(short for _, short in told)), robust)
-    return section("why", "Why this one", blocks, brief)
+    blocks = present(Items(tuple(told)), robust, *folds)
+    return section("why", "Why this one", blocks, (*_why_in_short(spoken, answer.units), *present(robust)))
 
 
-def _chosen(ledger: Ledger, units: str) -> tuple[Item, Item] | None:
-    """Return the chosen option with its reasons, in full and in one line."""
+def _why_in_short(ledgers: Sequence[Ledger], units: str) -> tuple[Block, ...]:
+    """Return the strongest reason for each of the picks that make the cutter, and the rest in one line."""
+    by_pick = {ledger.pick: ledger for ledger in ledgers}
+    first = tuple(Item(_short(by_pick[pick], units, True)) for pick in _MAIN_PICKS if pick in by_pick)
+    rest = ", ".join(_short(ledger, units, False) for ledger in ledgers if ledger.pick not in _MAIN_PICKS)
+    return present(Items(first), Say(f"Also: {rest}.") if rest else None)
+
+
+def _short(ledger: Ledger, units: str, reason: bool) -> str:
+    best = next((entry for entry in ledger.options if entry.option == ledger.chosen), None)
+    told = max((e for e in best.evidence if e.stance == "for"), key=lambda e: e.weight, default=None) if best else None
+    name = pick_words(ledger.pick, ledger.chosen or "none", units)
+    if told is None:
+        return name
+    return f"{name}: {clean(told.why)} [{told.rule}]" if reason else f"{name} [{told.rule}]"
+
+
+def _chosen(ledger: Ledger, units: str) -> Item | None:
+    """Return the chosen option with every reason."""
     best = next((entry for entry in ledger.options if entry.option == ledger.chosen), None)
     if best is None:
         return None
-    name = f"{pick_name(ledger.pick)}: {pick_option(ledger.pick, best.option, units)}"
+    name = pick_words(ledger.pick, best.option, units)
     spoken_for = sorted((e for e in best.evidence if e.stance == "for"), key=lambda entry: -entry.weight)
     against = [entry for entry in best.evidence if entry.stance != "for"]
     details = [_evidence(entry) for entry in (*spoken_for, *against)]
     next_best = next((entry for entry in ledger.options if entry is not best), None)
     if next_best is not None:
         details.append(f"next: {_standing(ledger.pick, next_best, units)}")
-    reason = f" - {clean(spoken_for[0].why)} [{spoken_for[0].rule}]" if spoken_for else ""
-    return Item(name, tuple(details), f"{best.balance:+g}"), Item(f"{name}{reason}")
+    return Item(name, tuple(details), f"{best.balance:+g}")
 
 
 def _evidence(entry: Evidence) -> str:
@@ -120,8 +142,13 @@ def _standing(pick: str, entry: OptionLedger, units: str) -> str:
 
 
 def _ledger(ledger: Ledger, units: str) -> Table:
-    rows = tuple(_ledger_row(ledger, entry, units) for entry in ledger.options)
-    return Table(("option", "balance", "for", "against", "ruled out by"), rows, frozenset({1}))
+    spoken = [entry for entry in ledger.options if entry.evidence or entry.option == ledger.chosen]
+    silent = [pick_option(ledger.pick, entry.option, units) for entry in ledger.options if entry not in spoken]
+    rows = [_ledger_row(ledger, entry, units) for entry in spoken]
+    if silent:
+        rows.append(("others", "", f"nothing was said about {', '.join(silent)}", "", ""))
+    head = ("option", "balance", "for", "against", "ruled out by")
+    return without_empty_columns(Table(head, tuple(rows), frozenset({1})))
 
 
 def _ledger_row(ledger: Ledger, entry: OptionLedger, units: str) -> tuple[str, ...]:
@@ -133,9 +160,7 @@ def _ledger_row(ledger: Ledger, entry: OptionLedger, units: str) -> tuple[str, .
 def _said(entry: OptionLedger, stance: str) -> str:
     words = (word for word in entry.evidence if word.stance == stance)
     strength = "" if stance == "rule_out" else ", {}"
-    return "; ".join(
-        f"{clean(word.why)} [{clean(word.rule)}{strength.format(word.strength)}]" for word in words
-    )
+    return "; ".join(f"{clean(word.why)} [{clean(word.rule)}{strength.format(word.strength)}]" for word in words)
 
 
 # ---------------------------------------------------------------------- why the others lost
@@ -214,9 +239,7 @@ def _numbers(answer: Answer) -> Section | None:
         if step.unit_power_kw is not None
     ]
     told = Fields(tuple(other), "Net power by the unit-power method, an independent check") if other else None
-    return section(
-        "plan", "The cut in numbers", present(steps_table(answer.plan.steps, _LINES, answer.units), told)
-    )
+    return section("plan", "The cut in numbers", present(steps_table(answer.plan.steps, _LINES, answer.units), told))
 
 
 def _drive(answer: Answer) -> list[Picture]:
@@ -238,10 +261,9 @@ def _assumptions(answer: Answer) -> Section | None:
     if not answer.assumptions:
         return None
     entries = tuple(_assumption(record, answer) for record in answer.assumptions)
-    short = tuple(
-        Item(f"{entry.text} - {entry.details[0]}" if entry.details else entry.text) for entry in entries
-    )
-    return section("assumptions", "Assumptions", (Say(_ASSUMED), Items(entries)), (Items(short),))
+    short = "; ".join(f"{entry.text} [{record.by}]" for entry, record in zip(entries, answer.assumptions, strict=True))
+    brief = Say(f"Not told, so assumed: {short}. To change one, write it in the job file.")
+    return section("assumptions", "Assumptions", (Say(_ASSUMED), Items(entries)), (brief,))
 
 
 def _assumption(record: FactRecord, answer: Answer) -> Item:
@@ -251,7 +273,7 @@ def _assumption(record: FactRecord, answer: Answer) -> Item:
     details = [
         f"{why} [{clean(record.by)}]" if record.by else why,
         rests,
-        f"In the job file: {clean(record.name)}",
+        f"In the job file: {job_key(record.name)}",
     ]
     shown = f"{fact_words(record.name)} {value_text(record.value, record.unit, answer.units)}"
     return Item(shown, tuple(detail for detail in details if detail))

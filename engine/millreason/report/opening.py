@@ -6,7 +6,7 @@ from collections.abc import Sequence
 
 from millreason.report.page import Box, Item, Items, Say, Section, Table, present
 from millreason.report.sheet import setup_sheet
-from millreason.report.words import clean, fact_words, limit_number, listing, option, recommends
+from millreason.report.words import clean, fact_words, job_key, limit_number, listing, option, recommends
 from millreason.trace import Answer, LimitRecord, Question, Refusal
 
 
@@ -34,30 +34,30 @@ def _conditions(answer: Answer) -> Section:
     box = Box("Cutting data are held back until this is confirmed", lines, "stop")
     names = listing(f"{each.fact.partition('.')[2]}: yes" for each in answer.conditions)
     how = Say(
-        f"When a qualified person has confirmed it, write under 'confirm:' in the job file: {names}. "
-        "Then run it again."
+        f"When a qualified person has confirmed it, write under 'confirm:' in the job file: {names}. Then run it again."
     )
     return Section("conditions", "Condition", (box, how), (box, how))
 
 
 def questions(answer: Answer, title: str) -> Section:
     """Return the questions, most valuable first, each with why it is asked."""
-    blocks = (Items(tuple(_question(question) for question in answer.questions), numbered=True),)
+    held = {question.fact for question in answer.conditions}
+    asked = [question for question in answer.questions if question.fact not in held]
+    blocks = (Items(tuple(_question(question) for question in asked), numbered=True),)
     return Section("questions", title, blocks, blocks)
 
 
 def _question(question: Question) -> Item:
     effect = f"It would change: {clean(question.effect)}" if question.effect else ""
     rules = f" [{listing(question.rules)}]" if question.rules else ""
-    details = (f"Why: {clean(question.because)}{rules}", effect, f"In the job file: {clean(question.fact)}")
+    details = (f"Why: {clean(question.because)}{rules}", effect, f"In the job file: {job_key(question.fact)}")
     mark = "" if question.need == "must" else "useful"
     return Item(clean(question.text), tuple(line for line in details if line), mark)
 
 
 def _refusal(answer: Answer, refusal: Refusal) -> Section:
     opened = tuple(
-        Item(clean(way.text), (f"Then: {clean(way.then)}",) if way.then else (), "verified")
-        for way in refusal.openings
+        Item(clean(way.text), (f"Then: {clean(way.then)}",) if way.then else (), "verified") for way in refusal.openings
     )
     others = tuple(Item(clean(text)) for text in refusal.alternatives)
     blocks = present(

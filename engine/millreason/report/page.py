@@ -134,9 +134,15 @@ class Page:
     footer: tuple[str, ...]
 
 
-def section(
-    key: str, title: str, blocks: tuple[Block, ...], brief: tuple[Block, ...] | None = None
-) -> Section | None:
+def without_empty_columns(table: Table) -> Table:
+    """Leave out the columns in which no row says anything."""
+    kept = [place for place in range(len(table.head)) if any(row[place] for row in table.rows)]
+    numbers = frozenset(new for new, place in enumerate(kept) if place in table.numbers)
+    rows = tuple(tuple(row[place] for place in kept) for row in table.rows)
+    return Table(tuple(table.head[place] for place in kept), rows, numbers, table.title)
+
+
+def section(key: str, title: str, blocks: tuple[Block, ...], brief: tuple[Block, ...] | None = None) -> Section | None:
     """Return a section, or None where it would be empty."""
     return Section(key, title, blocks, brief) if blocks else None
 

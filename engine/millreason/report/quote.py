@@ -4,8 +4,8 @@ from __future__ import annotations
 
 import json
 
-from millreason.report.words import clean, fact_number, lead_text, option
-from millreason.trace import Answer, Picks, PlanRecord
+from millreason.report.words import clean, fact_number, job_key, lead_text, option
+from millreason.trace import Answer, Picks, Plain, PlanRecord
 
 FORMAT = "millreason-quote/1"
 Value = str | float | int | list[str] | list[float]
@@ -18,23 +18,19 @@ def quote(answer: Answer) -> str:
     if answer.picks and answer.plan and answer.verdict in ("recommend", "recommend_with_warnings"):
         lines["tool"] = _tool(answer.picks)
         lines |= _times(answer, answer.plan)
-    lines["assumed"] = [f"{record.name} = {_plain(record.value)}" for record in answer.assumptions]
+    lines["assumed"] = [f"{job_key(record.name)} = {_plain(record.value)}" for record in answer.assumptions]
     lines["made_by"] = f"millreason {answer.version}, {answer.knowledge_hash[:12]}"
     return "".join(f"{name}: {_text(value)}\n" for name, value in lines.items())
 
 
 def flags(answer: Answer) -> list[str]:
     """Return what an estimator must not overlook, one word group each."""
-    first = {"ask": ["ask"], "refuse": ["refuse"], "conditional": ["conditional on safety"]}.get(
-        answer.verdict, []
-    )
+    first = {"ask": ["ask"], "refuse": ["refuse"], "conditional": ["conditional on safety"]}.get(answer.verdict, [])
     asked = [f"ask {question.fact}" for question in answer.questions if question.need == "must"]
     held = [f"confirm {question.fact}" for question in answer.conditions]
     limits = [f"limit {limit.key}" for limit in answer.refusal.limits] if answer.refusal else []
     over = [f"{check.verdict} {check.key}" for check in answer.checks if check.verdict != "ok"]
-    warned = [
-        f"{caution.severity} {caution.key}" for caution in answer.cautions if caution.severity != "note"
-    ]
+    warned = [f"{caution.severity} {caution.key}" for caution in answer.cautions if caution.severity != "note"]
     doubt = ["contradiction"] if answer.contradictions else []
     return list(dict.fromkeys([*first, *doubt, *asked, *held, *limits, *over, *warned]))
 
@@ -63,7 +59,7 @@ def _times(answer: Answer, plan: PlanRecord) -> dict[str, Value]:
             _round(plan.time_min),
             _round(plan.time_high_min),
         ],
-        "parts_per_edge_set": _round(plan.parts_per_edge_set),
+        "parts_per_edge_set": round(plan.parts_per_edge_set, 1),
         "edge_sets_for_batch": _round(plan.edge_sets_for_batch),
     }
     if quantity is not None:
@@ -84,7 +80,9 @@ def _round(number: float) -> float:
     return int(shown) if shown == int(shown) else shown
 
 
-def _plain(value: object) -> str:
+def _plain(value: Plain) -> str:
+    if isinstance(value, bool):
+        return "yes" if value else "no"
     return f"{value:g}" if isinstance(value, float) else clean(value)
 
 

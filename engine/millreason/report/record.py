@@ -110,9 +110,7 @@ def _calculations(answer: Answer) -> Section | None:
     )
     table = Table(("result", "value", "formula", "inputs", "references"), rows, frozenset({1}))
     return (
-        section("calculations", "Calculations", (Fold(f"{len(rows)} uses of a formula", (table,)),))
-        if rows
-        else None
+        section("calculations", "Calculations", (Fold(f"{len(rows)} uses of a formula", (table,)),)) if rows else None
     )
 
 

@@ -3,15 +3,18 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
+from dataclasses import replace
 
 from millreason import drawings
 from millreason.report.page import (
+    Block,
     Fields,
     Gallery,
     Item,
     Items,
     Pair,
     Picture,
+    Say,
     Section,
     Table,
     Tone,
@@ -39,6 +42,7 @@ TONES: dict[str, Tone] = {"note": "note", "caution": "caution", "warning": "warn
 _ORDER = {"warning": 0, "caution": 1, "note": 2}
 STOP_AT_SOUND = "the sound changes, it chatters, or chips turn blue, dusty or welded together"
 STOP_AT_EDGE = "burr, edge break-out or a step between passes grows"
+_NOT_BRIEF = ("Arc", "Teeth in cut", "Travel", "Edge sets")
 _LINES: tuple[Line, ...] = (
     ("spindle speed n", "rpm", lambda step: step.spindle_speed_rpm),
     ("cutting speed vc", "m/min", lambda step: step.cutting_speed_m_min),
@@ -57,15 +61,26 @@ def setup_sheet(answer: Answer, picks: Picks, plan: PlanRecord) -> Section:
         Fields(_after(answer, plan), "Edges, time and finish"),
         Items(tuple(Item(text) for text in _stop_signs(plan)), title="Stop and look when"),
     )
-    cautions = tuple(_short_caution(caution) for caution in by_severity(answer.cautions))
+    cautions = tuple(_short_caution(caution) for caution in by_severity(answer.cautions) if caution.severity != "note")
+    notes = [caution.key.replace("_", " ") for caution in answer.cautions if caution.severity == "note"]
     blocks = present(
         Fields(_tool(answer, picks, plan), "Tool"),
         Fields(_use(answer, picks, plan), "Position and passes"),
         Pair(left, right),
         Gallery(tuple(_pictures(answer, picks, plan))),
         Items(cautions, title="Cautions"),
+        Say(f"Also noted under Cautions: {', '.join(notes)}.") if notes else None,
     )
-    return Section("sheet", "Setup sheet", blocks, blocks)
+    return Section("sheet", "Setup sheet", blocks, tuple(_brief(block) for block in blocks))
+
+
+def _brief(block: Block) -> Block:
+    """Leave out of the short form what is not set or read at the machine."""
+    if isinstance(block, Fields):
+        return replace(block, rows=tuple(row for row in block.rows if row[0] not in _NOT_BRIEF))
+    if isinstance(block, Pair):
+        return Pair(block.left, tuple(_brief(inner) for inner in block.right))
+    return block
 
 
 def by_severity(cautions: Sequence[CautionRecord]) -> list[CautionRecord]:
@@ -74,7 +89,11 @@ def by_severity(cautions: Sequence[CautionRecord]) -> list[CautionRecord]:
 
 
 def _short_caution(caution: CautionRecord) -> Item:
-    return Item(clean(caution.do) or clean(caution.text), (), caution.severity, TONES[caution.severity])
+    """Return what to do; what can hurt someone also with its reason."""
+    words = clean(caution.do) or clean(caution.text)
+    if caution.severity == "warning":
+        words = f"{clean(caution.text)} {clean(caution.do)}".strip()
+    return Item(words, (), caution.severity, TONES[caution.severity])
 
 
 def steps_table(steps: Sequence[Step], lines: Sequence[Line], units: str, title: str = "") -> Table:

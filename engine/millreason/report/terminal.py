@@ -64,9 +64,7 @@ def terminal(page: Page, full: bool, width: int, colour: bool) -> str:
 def _parts(page: Page, full: bool, width: int) -> Iterator[RenderableType]:
     yield Rule(style="dim")
     yield Text(page.title, style="bold")
-    yield Text.assemble(
-        (page.verdict_text, _STYLES[page.tone] or "bold"), f": {page.summary}" if page.summary else ""
-    )
+    yield Text.assemble((page.verdict_text, _STYLES[page.tone] or "bold"), f": {page.summary}" if page.summary else "")
     for section in page.sections:
         blocks = section.blocks if full else section.brief
         if blocks:
@@ -75,7 +73,7 @@ def _parts(page: Page, full: bool, width: int) -> Iterator[RenderableType]:
     for line in page.footer if full else page.footer[-2:]:
         yield Text(line, style="dim")
     if not full:
-        yield Text("More: --full for the whole argument, --form html --out FILE for paper.", style="dim")
+        yield Text("More: --full shows every rule and number; --form html --out FILE for paper.", style="dim")
 
 
 def _section(section: Section, blocks: Sequence[Block], width: int) -> Iterator[RenderableType]:

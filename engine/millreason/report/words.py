@@ -33,6 +33,12 @@ _PICKS = {
     "fluid": "cutting fluid",
     "application": "ISO 513 band",
 }
+# Fields of a job file that are not simply the fact's name without its unit.
+_JOB_KEYS = {
+    "require.finish_ra_um": "require.finish",
+    "machine.spindle_tilt_mm_m": "machine.spindle_tilt_mm_m",
+    "fixture.sealed_area_mm2": "fixture.sealed_area_mm2",
+}
 # The corners of the area on the insert that meets the work, as `formulas.first_contact` names them.
 _CONTACT = {
     "S": "the nose",
@@ -83,9 +89,7 @@ _ENDINGS = {
 def clean(text: object) -> str:
     """Return a text on one line, without control or direction characters that could disturb a page."""
     kept = (" " if unicodedata.category(letter) in ("Cc", "Zl", "Zp") else letter for letter in str(text))
-    return " ".join(
-        "".join(letter for letter in kept if unicodedata.category(letter) not in ("Cf", "Cs")).split()
-    )
+    return " ".join("".join(letter for letter in kept if unicodedata.category(letter) not in ("Cf", "Cs")).split())
 
 
 def option(name: str) -> str:
@@ -116,6 +120,12 @@ def fact_words(name: str) -> str:
     return f"{group}: {_split_unit(rest)[0].replace('_', ' ')}"
 
 
+def job_key(fact_name: str) -> str:
+    """Return the field of a job file that sets a fact: 'machine.power' for 'machine.power_kw'."""
+    name = clean(fact_name)
+    return _JOB_KEYS.get(name) or _split_unit(name)[0]
+
+
 def number_words(name: str, value: float, system: str) -> str:
     """Return a number with the name and unit that its fact name states: 'time 5.4 min'."""
     words, unit = _split_unit(clean(name).removeprefix("plan."))
@@ -133,6 +143,12 @@ def pick_option(pick: str, name: str, system: str) -> str:
     if pick == "kappa_deg":
         return "round insert" if number == 0 else lead_text(90 - number, number)
     return show(number, "mm", system) if pick == "diameter_mm" else plain(number)
+
+
+def pick_words(pick: str, name: str, system: str) -> str:
+    """Return a pick and its option as one phrase, without saying a word twice: 'pitch fine', 'face mill'."""
+    told = pick_option(pick, name, system)
+    return told if pick in ("kappa_deg", "corner", "cutter_class") else f"{pick_name(pick)} {told}"
 
 
 def value_text(value: Plain, unit: str = "", system: str = "metric") -> str:
@@ -158,12 +174,7 @@ def fact_value(record: FactRecord, system: str) -> str:
     """Return the value of a fact, and in brackets how it was written where that says more."""
     shown = value_text(record.value, record.unit, system)
     written = clean(record.text)
-    if (
-        record.origin == "given"
-        and written
-        and written.replace("_", " ") not in shown
-        and shown not in written
-    ):
+    if record.origin == "given" and written and written.replace("_", " ") not in shown and shown not in written:
         return f"{shown} (written: {written})"
     return shown
 
@@ -283,5 +294,6 @@ def length(value_mm: float, system: str) -> str:
 
 
 def count(number: float) -> str:
-    """Return a count or a small number without needless digits."""
-    return plain(number, 2)
+    """Return a time or a count as finely as it is known: two or three digits."""
+    size = abs(number)
+    return plain(number, 0 if size >= 100 else 1 if size >= 10 else 2)
