@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator
+from collections.abc import Iterable, Iterator, Mapping
 from typing import Any
 
 from millreason.inference import Fact, InferenceRule
@@ -18,14 +18,18 @@ class Situation:
 
     def __init__(self, vocabulary: Vocabulary) -> None:
         self._vocabulary = vocabulary
-        self._records: dict[str, FactRecord] = {}
         self._values: dict[str, Value] = {}
+        # Who said a fact and how; the record is made only when it is wanted.
+        self._said: dict[str, tuple[Origin, str, str, BasisRecord | None]] = {}
+
+    def __len__(self) -> int:
+        return len(self._values)
 
     def copy(self) -> Situation:
         """Return an independent copy."""
         other = Situation(self._vocabulary)
-        other._records = dict(self._records)
         other._values = dict(self._values)
+        other._said = dict(self._said)
         return other
 
     def with_facts(self, facts: Mapping[str, Value], by: str) -> Situation:
@@ -47,10 +51,8 @@ class Situation:
         """Record a fact unless it is known already; return whether it was new."""
         if value is None or name in self._values:
             return False
-        definition = self._vocabulary.facts.get(name)
-        unit = definition.unit if definition else ""
         self._values[name] = value
-        self._records[name] = FactRecord(name, _plain(value), unit, origin, by, text, basis)
+        self._said[name] = origin, by, text, basis
         return True
 
     def value(self, name: str, default: Value = None) -> Value:
@@ -59,12 +61,17 @@ class Situation:
 
     def record(self, name: str) -> FactRecord | None:
         """Return the record of a fact, or None where it is not known."""
-        return self._records.get(name)
+        if name not in self._values:
+            return None
+        definition = self._vocabulary.facts.get(name)
+        unit = definition.unit if definition else ""
+        return FactRecord(name, _plain(self._values[name]), unit, *self._said[name])
 
     def records(self) -> list[FactRecord]:
         """Return every fact in the order of the vocabulary."""
         order = self._vocabulary.order
-        return sorted(self._records.values(), key=lambda record: (order.get(record.name, len(order)), record.name))
+        names = sorted(self._values, key=lambda name: (order.get(name, len(order)), name))
+        return [record for name in names if (record := self.record(name)) is not None]
 
     def for_inference(self, subjects: Iterable[tuple[str, str]]) -> list[Fact]:
         """Return the facts of the given attributes and kinds, as the inference engine wants them."""
