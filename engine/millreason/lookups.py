@@ -15,6 +15,7 @@ from millreason.formulas.passes import passes_across
 from millreason.job import Job
 from millreason.knowledge import Knowledge
 from millreason.materials import Materials
+from millreason.measures import room_between_walls
 from millreason.provenance import Basis
 from millreason.spindle import Spindle
 from millreason.trace import Question
@@ -50,6 +51,8 @@ def first_situation(job: Job, knowledge: Knowledge, materials: Materials, vocabu
     for name, entry in job.given.items():
         if name != "work.hardness_hb":
             situation.set(name, entry.value, "given", job.file, entry.text)
+    if any(name.startswith("machine.changer_") for name in job.given):
+        situation.set("machine.changer", "automatic", "computed", "what was given for the changer")
     _look_up_machine(job, knowledge, situation)
     _look_up_interface(knowledge, situation)
     _look_up_material(job, materials, vocabulary, result)
@@ -79,7 +82,7 @@ def unit_doubts(situation: Situation, vocabulary: Vocabulary, far: float) -> lis
 
 def look_up_usual(situation: Situation, knowledge: Knowledge) -> bool:
     """Look up what is usual for the interface and drive as they are known by now; return whether anything is new."""
-    practice, before = knowledge.practice, len(situation.records())
+    practice, before = knowledge.practice, len(situation)
     _look_up_interface(knowledge, situation)
     drive = situation.value("machine.drive")
     by_drive = practice["efficiency_by_drive"]
@@ -102,7 +105,7 @@ def look_up_usual(situation: Situation, knowledge: Knowledge) -> bool:
         file,
         basis=_record(knowledge.basis(file, base.basis_label()), False),
     )
-    return len(situation.records()) > before
+    return len(situation) > before
 
 
 def _look_up_machine(job: Job, knowledge: Knowledge, situation: Situation) -> None:
@@ -242,18 +245,17 @@ def size_facts(
     width = fact("work.width_mm")
     most = tuning.get("width_to_diameter_most", math.inf)
     one_pass = min(practice["width_to_diameter_one_pass"].high or 1.0, most)
-    single = fact("require.one_pass") or fact("require.no_overlap_line") or fact("work.feature") == "slot"
+    single = fact("require.one_pass") or fact("require.no_overlap_line")
+    slot = fact("work.feature") == "slot"
+    most_of_one = 1.0 if slot else one_pass
+    most_of_several = 1.0 if slot else min(practice["width_to_diameter_most"].number, most)
+    overlap = practice["pass_overlap_mm"].number
     passes = (
         1
-        if single or width <= one_pass * nominal_mm
-        else passes_across(
-            width,
-            nominal_mm,
-            practice["pass_overlap_mm"].number,
-            min(practice["width_to_diameter_most"].number, most),
-        )
+        if single or width <= most_of_one * nominal_mm
+        else passes_across(width, nominal_mm, overlap, most_of_several)
     )
-    strip = (width + (passes - 1) * practice["pass_overlap_mm"].number) / passes
+    strip = nominal_mm if slot and passes > 1 else (width + (passes - 1) * overlap) / passes
     speed = spindle_speed(fact("material.speed_start_m_min"), nominal_mm)
     at = min(speed, spindle.speed_max_rpm)
     full = max(power for _, power in spindle.net_curve)
@@ -270,9 +272,7 @@ def size_facts(
             else fact("machine.changer_empty_mm", fact("machine.changer_full_mm")),
         ),
         "size.to_changer_full": _over(nominal_mm, fact("machine.changer_full_mm")),
-        "size.to_pocket": _over(nominal_mm, min(width, fact("work.length_mm")))
-        if fact("work.feature") == "closed_pocket"
-        else None,
+        "size.to_pocket": _over(nominal_mm, room_between_walls(fact)),
         "size.speed_use": speed / spindle.speed_max_rpm,
         "size.torque_share": min(available_power(spindle.net_curve, at) / full, 1.0),
     }

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from typing import Any
 
 from millreason.candidates import Candidate
@@ -159,9 +159,9 @@ class Meter:
         layout, first = plan.layout, plan.loads[0]
         pocket = self._fact("work.feature") == "closed_pocket"
         outermost = plan.candidate.outermost_mm
-        smaller = min(self._fact("work.width_mm"), self._fact("work.length_mm"))
+        between = room_between_walls(self._fact)
         return {
-            "pocket_use": outermost / smaller if pocket else None,
+            "pocket_use": _over(outermost, between),
             "pocket_corner_use": _over(outermost / 2, self._fact("work.pocket_corner_mm")) if pocket else None,
             "passes_across": float(layout.passes),
             "layers": float(plan.layers),
@@ -257,6 +257,15 @@ class Meter:
 
     def _number(self, name: str) -> float:
         return float(self._practice[name].value)
+
+
+def room_between_walls(fact: Callable[[str], Any]) -> float | None:
+    """Return the room a body has between the walls: the smaller side of a closed pocket, the width of a slot."""
+    if fact("work.feature") == "slot":
+        return float(fact("work.width_mm"))
+    if fact("work.feature") == "closed_pocket":
+        return float(min(fact("work.width_mm"), fact("work.length_mm")))
+    return None
 
 
 def _over(value: float | None, limit: float | None) -> float | None:

@@ -71,9 +71,9 @@ class Planner:
             self._practice["width_to_diameter_one_pass"].high,
             self._tuning.get("width_to_diameter_most", math.inf),
         )
-        if self._fact("work.feature") == "slot":
-            return Layout(1, min(width, diameter), 0.0, 0.0, 0.0, flush_arc(min(width, diameter), diameter), True)
         forced = bool(self._fact("require.one_pass") or self._fact("require.no_overlap_line"))
+        if self._fact("work.feature") == "slot":
+            return self._slot(width, diameter, forced, sheet)
         if width <= one_ratio * diameter or forced:
             return self._one_pass(min(width, diameter), diameter, direction, sheet)
         count = sheet.use("plan.passes_across", "", passes_across, width, diameter, overlap, ratio)
@@ -82,6 +82,16 @@ class Planner:
         arc = sheet.use("arc of contact", "deg", flush_arc, strip, diameter, side)
         gap = diameter - strip if side == "exit" else 0.0
         return Layout(int(count), strip, overlap, (diameter - strip) / 2, gap, arc, False)
+
+    def _slot(self, width: float, diameter: float, forced: bool, sheet: Worksheet) -> Layout:
+        """Lay the passes along both walls; the first is buried to its full diameter, and the plan is made for that."""
+        reach, count = min(width, diameter), 1
+        if width > diameter and not forced:
+            overlap = self._number("pass_overlap_mm")
+            count = int(sheet.use("plan.passes_across", "", passes_across, width, diameter, overlap, 1.0))
+        lap = (count * reach - width) / (count - 1) if count > 1 else 0.0
+        arc = sheet.use("arc of contact", "deg", flush_arc, reach, diameter)
+        return Layout(count, reach, lap, 0.0, 0.0, arc, count == 1)
 
     def _one_pass(self, width: float, diameter: float, direction: str, sheet: Worksheet) -> Layout:
         room = (diameter - width) / 2

@@ -40,6 +40,10 @@ def spindle_of(situation: Situation, practice: Mapping[str, Any]) -> Spindle:
         points = tuple((speed, net_power_limit(motor, efficiency, torque * duty, speed)) for speed, torque in curve)
         top = min(top, points[-1][0]) if top else points[-1][0]
     else:
+        torque = fact("machine.torque_nm")
+        if torque:
+            # A spindle with little torque may not reach its motor's power at any speed.
+            net = net_power_limit(fact("machine.power_kw") * duty, efficiency, torque * duty, top)
         points = drive_curve(net, _base_speed(situation, net, duty, steps, top), top)
     full = max(kilowatt for _, kilowatt in points)
     base = next(speed for speed, kilowatt in points if kilowatt >= full * (1 - _TINY))
