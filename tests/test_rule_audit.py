@@ -19,6 +19,7 @@ from millreason.rule_audit import CHECKS, Audit, audit
 from millreason.rule_audit.conditions import check_conditions
 from millreason.rule_audit.coverage import check_options, check_regions
 from millreason.rule_audit.findings import AuditFinding, Subject
+from millreason.rule_audit.pairs import check_contradictions
 from millreason.rule_audit.texts import check_bases, check_trials
 from millreason.rule_audit.usage import check_facts, check_knowledge, check_sources
 from millreason.rulebook import load_rules
@@ -98,6 +99,29 @@ def test_witness_keeps_to_what_is_looked_up(tmp_path: Path) -> None:
     large = {"machine.taper_size": "large", "machine.interface": "7/24-30"}
     planted = subject(tmp_path, [weigh("PIT-001", large, "for", "pitch", "coarse")])
     assert planted.search.find(planted.book.rules["PIT-001"]) is None
+
+
+def test_ratio_needs_what_it_is_computed_from(tmp_path: Path) -> None:
+    slender = {"job.floor_slenderness": {"above": 15}}
+    rules = [
+        concludes("SET-001", slender, setup__axial_support="thin_floor"),
+        concludes("SET-002", {"work.unsupported_span_mm": {"known": False}}, setup__axial_support="full"),
+        concludes("SET-003", {"work.unsupported_span_mm": {"below": 100}, **slender}, setup__rim="none"),
+    ]
+    planted = subject(tmp_path, rules)
+    assert not of_kind(list(check_contradictions(planted)), "contradiction", "error")
+    assert planted.search.find(planted.book.rules["SET-003"]) is not None
+    both = [*rules[:1], concludes("SET-002", {"work.unsupported_span_mm": {"above": 100}}, setup__axial_support="full")]
+    assert of_kind(list(check_contradictions(subject(tmp_path, both))), "contradiction", "error")
+
+
+def test_ratio_follows_from_its_parts_where_all_are_given(tmp_path: Path) -> None:
+    parts = {"work.stock_mm": {"below": 1}, "work.thickness_mm": {"above": 10}}
+    rules = [concludes("SET-001", {**parts, "job.thickness_to_stock": {"above": 0.5}}, setup__rim="none")]
+    planted = subject(tmp_path, rules)
+    assert [entry.kind for entry in check_conditions(planted)] == ["cannot fire"]
+    loose = [concludes("SET-001", {**parts, "job.thickness_to_stock": {"below": 0.5}}, setup__rim="none")]
+    assert not list(check_conditions(subject(tmp_path, loose)))
 
 
 def test_trials_for_unknown_rules_and_rules_without_trials(tmp_path: Path) -> None:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections import defaultdict
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from functools import cached_property
 from itertools import islice
 from math import inf
@@ -12,6 +12,7 @@ from typing import Any
 from millreason.facts import Situation
 from millreason.knowledge import Knowledge
 from millreason.lookups import look_up_usual
+from millreason.rule_audit.ratios import computed, rests_on
 from millreason.rule_audit.values import ALONE, Demand, Demands, ValueSet, demands, plain, together
 from millreason.rulebook import Rule, RuleBook, Scalar
 from millreason.stages import Stage
@@ -58,10 +59,23 @@ class WitnessSearch:
         if wanted is None:
             return None
         for roots in islice(self._traced_back(wanted, frozenset()), MOST_TRIES):
+            if self._needs_what_must_be_unknown(roots):
+                continue
             for facts in self._samples(roots):
                 if self.confirms(facts, rules):
                     return facts
         return None
+
+    def _needs_what_must_be_unknown(self, wanted: Demands) -> bool:
+        """Whether a ratio is demanded although something it is computed from must not be known."""
+        return any(
+            need.any_of and any(base in wanted and wanted[base].missing for base in self._rests_on.get(name, ()))
+            for name, need in wanted.items()
+        )
+
+    @cached_property
+    def _rests_on(self) -> Mapping[str, frozenset[str]]:
+        return rests_on(self._knowledge, self._vocabulary)
 
     def _traced_back(self, wanted: Demands, done: frozenset[str]) -> Iterator[Demands]:
         """Yield the demands with each judgement replaced by the demands of a rule that concludes it."""
@@ -115,6 +129,12 @@ class WitnessSearch:
     def _situation(self, facts: Facts) -> Situation:
         """Return the facts as a job would have them: what can be looked up for others is, and goes before."""
         situation = Situation(self._vocabulary)
+        ratios = [name for name, bases in self._rests_on.items() if name in facts and bases <= facts.keys()]
+        if ratios:
+            follows = computed(
+                {name: facts[name] for name in facts if name not in ratios}, self._knowledge, self._vocabulary
+            )
+            facts = {**facts, **{name: follows[name] for name in ratios}}
         for looked_up in (False, True):
             for name, value in facts.items():
                 if (self._vocabulary.facts[name].from_ != "job") == looked_up:
