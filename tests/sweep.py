@@ -100,7 +100,8 @@ def _relative(number: int, raw: dict[str, Any], job: Job, out: Outcome, answer: 
         return "in inches", list(_in_inches(raw, answer))
     if turn == 4:
         other = answer_to(read(shuffled(raw, Random(number))))[1]
-        return "reordered", [] if other.to_json() == answer.to_json() else ["another order of the fields, another answer"]
+        same = other.to_json() == answer.to_json()
+        return "reordered", [] if same else ["another order of the fields, another answer"]
     return "", []
 
 

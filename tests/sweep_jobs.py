@@ -10,10 +10,14 @@ from typing import Any
 from millreason.choice import Adviser
 
 Plain = dict[str, Any]
-VAGUE = ("steel", "stainless", "cast iron", "aluminium", "tool steel", "titanium", "brass", "graphite", "PEEK", "blorium")
+VAGUE = (
+    "steel", "stainless", "cast iron", "aluminium", "tool steel", "titanium", "brass", "graphite", "PEEK", "blorium",
+)  # fmt: skip
 SKINS = ("none", "mill_scale", "cast_skin", "forged_scale", "flame_cut_edge", "weld", "hardened_skin", "alpha_case")
 FEATURES = ("open_face", "shoulder", "closed_pocket", "both_sides", "slot")
-FLUIDS = ("none", "air", "flood", "flood_water_mixed", "through_tool", "mql", "mineral_oil", "mg_rated_fluid", "brush_oil")
+FLUIDS = (
+    "none", "air", "flood", "flood_water_mixed", "through_tool", "mql", "mineral_oil", "mg_rated_fluid", "brush_oil",
+)  # fmt: skip
 CONFIRM = ("magnesium_fire_controls", "no_steel_inserts_cast_in", "beryllium_exposure_controls")
 PER_INCH = 25.4
 
@@ -53,14 +57,14 @@ class Sampler:
         how = self._random.random()
         if how < 0.75:
             material = self._random.choice(self._materials)
-            names = [name for names in material.names.values() for name in ([names] if isinstance(names, str) else names)]
-            work["material"] = self._random.choice(names)
+            work["material"] = self._random.choice([name for names in material.names.values() for name in names])
         elif how < 0.83:
             work["material"] = self._random.choice(VAGUE)
         elif how < 0.95:
             work["iso_group"] = self._random.choice("PMKNSH")
         if self._chance(0.3):
-            work["hardness"] = self._random.choice([f"{self._random.randint(60, 620)} HB", f"{self._random.randint(18, 64)} HRC"])
+            brinell, rockwell = self._random.randint(60, 620), self._random.randint(18, 64)
+            work["hardness"] = self._random.choice([f"{brinell} HB", f"{rockwell} HRC"])
         if self._chance(0.4):
             work["skin"] = sorted({self._random.choice(SKINS) for _ in range(self._random.randint(1, 2))})
         if self._chance(0.25):
@@ -121,7 +125,7 @@ class Sampler:
         self._put(machine, "changer_state", 0.3, self._random.choice(("full", "neighbours_empty")))
         self._put(machine, "changer_mass", 0.25, f"{self._log(2, 40):.3g} kg")
         self._put(machine, "changer_moment", 0.1, f"{self._log(3, 80):.3g} N.m")
-        self._put(machine, "fluids", 0.75, sorted({self._random.choice(FLUIDS) for _ in range(self._random.randint(1, 3))}))
+        self._put(machine, "fluids", 0.75, sorted(self._random.sample(FLUIDS, self._random.randint(1, 3))))
         self._put(machine, "backlash", 0.3, self._length(0.002, 1))
         self._put(machine, "control", 0.5, self._random.choice(("cnc", "cnc", "manual")))
         self._put(machine, "feed_max", 0.4, f"{round(self._log(200, 30000))} mm/min")
@@ -145,7 +149,8 @@ class Sampler:
 
     def _cutter(self, number: int) -> Plain:
         classes = ("face_mill", "square_shoulder_mill", "round_insert_mill", "high_feed_mill")
-        cutter: Plain = {"id": f"invented {number}", "diameter": self._length(25, 250), "teeth": self._random.randint(2, 16)}
+        cutter: Plain = {"id": f"invented {number}", "diameter": self._length(25, 250)}
+        cutter["teeth"] = self._random.randint(2, 16)
         self._put(cutter, "cutter_class", 0.8, self._random.choice(classes))
         self._put(cutter, "kappa", 0.5, self._random.choice(("45 deg", "75 deg", "90 deg")))
         self._put(cutter, "rake", 0.4, self._random.choice(("positive_negative", "double_positive", "double_negative")))

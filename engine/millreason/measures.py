@@ -32,6 +32,7 @@ BODY_FACTS = frozenset(
         "plan.usual_diameter_use", "plan.pocket_use", "plan.pocket_corner_use", "plan.overhang_to_diameter",
     }
 )  # fmt: skip
+CORNER_FACTS = frozenset({"plan.corner_use", "pick.corner", "pick.corner_radius_mm"})
 CUT_FACTS = BODY_FACTS | {
     "plan.power_use", "plan.power_use_worn", "plan.net_power_kw", "plan.available_power_kw", "plan.gullet_use", "plan.teeth_in_cut",
     "plan.cutting_speed_m_min", "plan.spindle_speed_rpm", "plan.speed_to_start", "plan.body_speed_use", "plan.lift_to_clamp",

@@ -6,10 +6,12 @@ from collections.abc import Iterator, Mapping
 from typing import TYPE_CHECKING, Any
 
 from millreason.candidates import Candidate, Catalogue
-from millreason.measures import BODY_FACTS, CUT_FACTS, Meter
+from millreason.cut_plan import Plan
+from millreason.measures import BODY_FACTS, CORNER_FACTS, CUT_FACTS, Meter
 from millreason.outcome import Outcome, Tried
 from millreason.own_cutters import own_candidates, own_cutters
 from millreason.plan import Planner
+from millreason.rulebook import Condition, TestSpec
 from millreason.spindle import Spindle
 from millreason.trace import LimitRecord
 
@@ -71,8 +73,8 @@ class Search:
 
     def _try(self, candidate: Candidate) -> Tried:
         out, stage = self._out, self._adviser.stages["judge"]
-        plan = self._planner.plan(candidate, out.separate["direction"])
-        facts = {**self._meter.picks(candidate, out.separate), **self._meter.measure(plan)}
+        plan, measured = self._measured(candidate)
+        facts = {**self._meter.picks(candidate, out.separate), **measured}
         situation = out.situation.with_facts(facts, "plan")
         limits = [LimitRecord("cutter_on_hand", entry.why, None, None, entry.rule, []) for entry in candidate.blocked]
         reasons, lowered = [], 0.0
@@ -87,23 +89,48 @@ class Search:
                 reasons.append(f"{why} ({firing.rule}, {then.lower})")
         return Tried(candidate, plan, facts, tuple(limits), lowered, tuple(reasons), tuple(firings), situation)
 
+    def _measured(self, candidate: Candidate) -> tuple[Plan, dict[str, Any]]:
+        """Return the plan of a candidate and what it measures up to."""
+        plan = self._planner.plan(candidate, self._out.separate["direction"])
+        return plan, self._meter.measure(plan)
+
+    def _at_finest(self, tried: Tried) -> bool:
+        """Whether a plan reaches the finest surface that face milling leaves at all, which no other can better."""
+        finest = self._adviser.knowledge.practice["ra_floor_um"].by[self._out.situation.value("material.iso_group")]
+        return bool(tried.facts["plan.ra_um"] <= finest)
+
     def _ruled_out_with(self, tried: Tried) -> Iterator[Kin]:
         """Yield what else need not be tried: tools that share everything the rejecting rules looked at."""
         rules = self._adviser.stages["judge"].rules
-        body, cut, _ = _kin(tried.candidate)
+        body, cut, corner, every = _kin(tried.candidate)
         rough = tried.plan.loads[0].name == "roughing"
         for limit in tried.limits:
             if limit.rule not in rules:
                 continue
-            looked_at = {fact for fact in rules[limit.rule].when if fact.startswith(("plan.", "pick."))}
+            when = rules[limit.rule].when
+            looked_at = {fact for fact in when if fact.startswith(("plan.", "pick."))}
             if looked_at <= BODY_FACTS:
                 yield body
+            elif looked_at <= CORNER_FACTS:
+                yield corner
+            elif looked_at == {"plan.ra_use"} and _is_floor(when["plan.ra_use"]) and self._at_finest(tried):
+                yield every
             elif rough and looked_at <= CUT_FACTS:
                 yield cut
 
 
-def _kin(candidate: Candidate) -> tuple[Kin, Kin, Kin]:
-    """Return what a candidate shares with others: its body; its cut; and itself."""
+def _is_floor(condition: Condition) -> bool:
+    """Whether a condition that a value meets is met by every larger value too."""
+    return isinstance(condition, TestSpec) and (condition.above is not None or condition.at_least is not None)
+
+
+def _kin(candidate: Candidate) -> tuple[Kin, Kin, Kin, Kin]:
+    """Return what a candidate shares with others: its body; its cut; its corner; and the job."""
     body = (candidate.family.id, candidate.size.label, candidate.own.id if candidate.own else None)
     cut = (*body, candidate.pitch, candidate.rake.axial_deg, candidate.rake.radial_deg, candidate.edge)
-    return body, cut, (*cut, candidate.corner.corner, candidate.wiper)
+    return body, cut, ("corner", candidate.family.id, candidate.corner.corner, body[2]), ()
+
+
+def identity_of(candidate: Candidate) -> Kin:
+    """Return everything in which a candidate can differ from another."""
+    return *_kin(candidate)[2], candidate.teeth, candidate.mounting, candidate.pockets
