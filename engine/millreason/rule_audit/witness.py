@@ -134,7 +134,7 @@ class WitnessSearch:
             follows = computed(
                 {name: facts[name] for name in facts if name not in ratios}, self._knowledge, self._vocabulary
             )
-            facts = {**facts, **{name: follows[name] for name in ratios}}
+            facts = {**facts, **{name: follows[name] for name in ratios if name in follows}}
         for looked_up in (False, True):
             for name, value in facts.items():
                 if (self._vocabulary.facts[name].from_ != "job") == looked_up:
