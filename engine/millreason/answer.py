@@ -62,12 +62,14 @@ def write_answer(adviser: Adviser, out: Outcome, openings: bool = True) -> Answe
         engine=adviser.stages["weigh"].engine_name,
         version=__version__,
         knowledge_hash=adviser.knowledge.content_hash,
-        provenance={kind: count for kind, count in sorted(adviser.knowledge.provenance_counts().items())},
+        provenance=dict(adviser.provenance),
     )
 
 
 def verdict_of(out: Outcome) -> Verdict:
-    """Return the verdict: ask before refuse, refuse before conditional, warnings last."""
+    """Return the verdict: what a rule refuses stays refused; else ask, refuse, hold back, and warn, in this order."""
+    if out.limits:
+        return "refuse"
     if out.must_ask:
         return "ask"
     if not out.stands:

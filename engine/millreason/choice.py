@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections import Counter
 from collections.abc import Mapping
 from functools import cache, cached_property
 from pathlib import Path
@@ -73,6 +74,17 @@ class Adviser:
         `only` keeps the search to candidates with the given options, such as {"pitch": "coarse"}.
         """
         return _Run(self, job).outcome(only or {})
+
+    def search(self, out: Outcome, spindle: Spindle) -> Search:
+        """Return the search over the candidates of one job."""
+        return Search(self, out, spindle)
+
+    @cached_property
+    def provenance(self) -> Mapping[str, int]:
+        """How many values of the knowledge, materials included, stand on each kind of basis."""
+        total = Counter[str](self.knowledge.provenance_counts())
+        total.update(self.materials.counts)
+        return dict(sorted(total.items()))
 
     @cached_property
     def stages(self) -> Mapping[str, Stage]:
@@ -161,7 +173,9 @@ class _Run:
         self._out.questions = {fact: question for fact, question in self._out.questions.items() if self._open(fact)}
 
     def _open(self, fact: str) -> bool:
-        return fact == "work.material" or self._situation.value(fact) is None
+        """Whether a question is still worth putting: what is asked is unknown, or only assumed."""
+        record = self._situation.record(fact)
+        return fact == "work.material" or record is None or record.origin == "assumed"
 
     def _assume(self) -> bool:
         stage = self._adviser.stages["assume"]
@@ -291,7 +305,7 @@ class _Run:
     def _search(self, only: Mapping[str, str]) -> None:
         out = self._out
         if not out.limits:
-            Search(self._adviser, out, self.spindle).run(only)
+            self._adviser.search(out, self.spindle).run(only)
 
     # ------------------------------------------------------------------ cautions
     def _caution(self) -> None:
@@ -309,7 +323,7 @@ class _Run:
     def _answer_facts(self) -> dict[str, Any]:
         out = self._out
         facts: dict[str, Any] = {"answer.verdict": "recommend"}
-        if out.must_ask:
+        if out.must_ask and not out.limits:
             facts["answer.verdict"] = "ask"
             facts["answer.missing"] = ("some",)
         elif not out.stands:

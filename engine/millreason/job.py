@@ -67,7 +67,8 @@ class Job:
         """Return the same job with one fact set to a value, or left blank for None."""
         given = {name: entry for name, entry in self.given.items() if name != fact}
         if value is not None:
-            given[fact] = Given(value, str(value))
+            # Hardness is the one fact that keeps the scale it was given on.
+            given[fact] = Given(value, str(value), "HB" if fact == "work.hardness_hb" else "")
         return replace(self, given=given)
 
 

@@ -205,7 +205,11 @@ def complete_situation(situation: Situation, knowledge: Knowledge, vocabulary: V
             situation.set(name, upper / lower, "computed", "ratio")
 
     ratio("job.thickness_to_stock", fact("work.stock_mm"), fact("work.thickness_mm"))
-    ratio("job.floor_slenderness", fact("work.unsupported_span_mm"), fact("work.floor_thickness_mm"))
+    ratio(
+        "job.floor_slenderness",
+        fact("work.unsupported_span_mm"),
+        fact("work.floor_thickness_mm", fact("work.thickness_mm")),
+    )
     ratio("job.wall_slenderness", fact("work.wall_height_mm"), fact("work.wall_thickness_mm"))
     ratio("job.overhang_to_gauge", fact("fixture.overhang_mm"), fact("machine.gauge_diameter_mm"))
     ratio("job.width_to_largest_cutter", fact("work.width_mm"), fact("machine.largest_usual_diameter_mm"))
@@ -251,9 +255,7 @@ def size_facts(
     most_of_several = 1.0 if slot else min(practice["width_to_diameter_most"].number, most)
     overlap = practice["pass_overlap_mm"].number
     passes = (
-        1
-        if single or width <= most_of_one * nominal_mm
-        else passes_across(width, nominal_mm, overlap, most_of_several)
+        1 if single or width <= most_of_one * nominal_mm else passes_across(width, nominal_mm, overlap, most_of_several)
     )
     strip = nominal_mm if slot and passes > 1 else (width + (passes - 1) * overlap) / passes
     speed = spindle_speed(fact("material.speed_start_m_min"), nominal_mm)

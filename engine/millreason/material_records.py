@@ -157,6 +157,7 @@ class OutsideWords(Record):
 
     words: Many[str]
     why: str
+    kind: Literal["metal", "non_metal"] = "non_metal"
 
 
 class WordFile(KnowledgeFile):

@@ -97,6 +97,7 @@ class Unknown:
     near: tuple[str, ...]
     why: str
     said: Said
+    kind: str | None = None
 
 
 Result = Found | Ambiguous | Unknown
@@ -126,7 +127,7 @@ def find_material(
     if entries:
         return _several(entries, best, said)
     if outside:
-        return Unknown((), outside[0].why, said)
+        return Unknown((), outside[0].why, said, outside[0].kind)
     if said.general:
         return _general(book, index, said)
     return Unknown(near_names(index, _wanted(said)), "No material of this name is known.", said)

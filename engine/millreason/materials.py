@@ -121,6 +121,9 @@ class Materials(MaterialBook):
         result.facts += _blank_facts(found.said.hints) if text else []
         if isinstance(found, Found):
             self._add_found(found, given.value if given else None, result)
+        elif isinstance(found, Unknown) and found.kind == "non_metal":
+            basis = Basis(common_practice=found.why)
+            result.facts.append(LookUpFact("material.kind", "non_metal", "words of the material", text, basis))
         elif written:
             self._add_question(found, result)
         hb = given.value if given else None

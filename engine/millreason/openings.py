@@ -15,7 +15,8 @@ if TYPE_CHECKING:
     from millreason.choice import Adviser
     from millreason.outcome import Outcome
 
-STEPS = 24
+FAR = 32.0
+MOST_MACHINES = 2
 TOLERANCE = 0.01
 MOST_OPENINGS = 6
 # Facts of which less makes a job easier; of all others more does.
@@ -34,107 +35,114 @@ LESS_IS_EASIER = frozenset(
 
 def find_openings(adviser: Adviser, out: Outcome, limits: list[LimitRecord]) -> list[Opening]:
     """Return the smallest changes that turn the refusal into an answer: single ones, else pairs, and other machines."""
-    facts = list(dict.fromkeys(fact for limit in limits for fact in limit.relax))
-    found = [opening for fact in facts if (opening := _single(adviser, out, fact)) is not None]
-    if not found:
-        found.extend(_pairs(adviser, out, facts))
-    return found[:MOST_OPENINGS] + list(_machines(adviser, out))
+    return _Openings(adviser, out).find(list(dict.fromkeys(fact for limit in limits for fact in limit.relax)))
 
 
-def _opens(adviser: Adviser, job: Job) -> str | None:
-    """Return what a changed job would get, or None while it is still refused or asked about."""
-    outcome = adviser.decide(job)
-    if outcome.must_ask or not outcome.stands:
-        return None
-    return outcome.stands[0].candidate.label
+class _Openings:
+    """Looks for openings on a quick adviser; what is returned has been run on the adviser that answers."""
 
+    def __init__(self, adviser: Adviser, out: Outcome) -> None:
+        from millreason.quick import QuickAdviser
 
-def _single(adviser: Adviser, out: Outcome, fact: str) -> Opening | None:
-    changed = _smallest(adviser, out.job, out, fact)
-    if changed is None:
-        return None
-    value, then = changed
-    return Opening({fact: value}, _text(adviser, out, {fact: value}), then)
+        self._adviser = adviser
+        self._quick = QuickAdviser(adviser)
+        self._out = out
 
+    def find(self, facts: list[str]) -> list[Opening]:
+        single = [opening for fact in facts if (opening := self._single(fact)) is not None]
+        found = single or list(self._pairs(facts))
+        return found[:MOST_OPENINGS] + list(self._machines())
 
-def _smallest(adviser: Adviser, job: Job, out: Outcome, fact: str) -> tuple[Any, str] | None:
-    """Return the smallest change of one fact that opens a way, to one per cent, and what it gives."""
-    current = out.situation.value(fact)
-    definition = adviser.vocabulary.facts[fact]
-    if definition.kind == "flag":
-        then = _opens(adviser, job.with_value(fact, not current)) if current is not None else None
-        return None if then is None else (not current, then)
-    if definition.kind == "choice":
-        for option in definition.options:
-            if option != current and (then := _opens(adviser, job.with_value(fact, option))) is not None:
-                return option, then
-        return None
-    if not isinstance(current, int | float):
-        return None
-    return _bisect(adviser, job, fact, float(current), definition.range or [0.0, float("inf")])
-
-
-def _bisect(adviser: Adviser, job: Job, fact: str, current: float, limits: list[float]) -> tuple[float, str] | None:
-    factor = 0.8 if fact in LESS_IS_EASIER else 1.25
-    shut, value = current, current
-    for _ in range(STEPS):
-        value = min(max(value * factor, limits[0]), limits[1])
-        then = _opens(adviser, job.with_value(fact, value))
-        if then is not None:
-            break
-        if value in limits:
+    def _opens(self, job: Job) -> str | None:
+        """Return what a changed job would get, or None while it is still refused or asked about."""
+        outcome = self._quick.decide(job)
+        if outcome.must_ask or outcome.limits or not outcome.stands:
             return None
-        shut = value
-    else:
+        return outcome.stands[0].candidate.label
+
+    def _verified(self, changes: dict[str, Any], job: Job, text: str) -> Opening | None:
+        """Return the opening if the adviser that answers agrees."""
+        outcome = self._adviser.decide(job)
+        if outcome.must_ask or outcome.limits or not outcome.stands:
+            return None
+        return Opening(changes, text, outcome.stands[0].candidate.label)
+
+    def _single(self, fact: str) -> Opening | None:
+        value = self._smallest(self._out.job, fact)
+        return None if value is None else self._changed({fact: value})
+
+    def _changed(self, changes: dict[str, Any]) -> Opening | None:
+        job = self._out.job
+        for fact, value in changes.items():
+            job = job.with_value(fact, value)
+        return self._verified(changes, job, _text(self._adviser, self._out, changes))
+
+    def _smallest(self, job: Job, fact: str) -> Any:
+        """Return the smallest change of one fact that opens a way, numbers to one per cent, or None."""
+        current = self._out.situation.value(fact)
+        definition = self._adviser.vocabulary.facts[fact]
+        if definition.kind == "flag":
+            turned = not current
+            return turned if current is not None and self._opens(job.with_value(fact, turned)) else None
+        if definition.kind == "choice":
+            options = (option for option in definition.options if option != current)
+            return next((option for option in options if self._opens(job.with_value(fact, option))), None)
+        if not isinstance(current, int | float) or isinstance(current, bool):
+            return None
+        low, high = definition.range or (0.0, float("inf"))
+        return self._bisect(job, fact, float(current), max(low, 1e-6), high)
+
+    def _bisect(self, job: Job, fact: str, current: float, low: float, high: float) -> float | None:
+        far = max(current / FAR, low) if fact in LESS_IS_EASIER else min(current * FAR, high)
+        if current <= 0 or far == current or not self._opens(job.with_value(fact, far)):
+            return None
+        shut, open_at = current, far
+        while abs(open_at - shut) > TOLERANCE * abs(open_at):
+            middle = (shut * open_at) ** 0.5
+            if self._opens(job.with_value(fact, middle)):
+                open_at = middle
+            else:
+                shut = middle
+        return open_at
+
+    def _pairs(self, facts: list[str]) -> Iterator[Opening]:
+        """Yield pairs where no change alone is enough: one fact freed as far as it goes, the other as little as needed."""
+        for first, second in combinations(facts, 2):
+            freed = self._freed(first)
+            if freed is None:
+                continue
+            value = self._smallest(self._out.job.with_value(first, freed), second)
+            if value is None:
+                continue
+            back = self._smallest(self._out.job.with_value(second, value), first)
+            if back is not None and (opening := self._changed({first: back, second: value})) is not None:
+                yield opening
+
+    def _freed(self, fact: str) -> Any:
+        current = self._out.situation.value(fact)
+        if isinstance(current, bool):
+            return not current
+        if isinstance(current, int | float):
+            return current / FAR if fact in LESS_IS_EASIER else current * FAR
         return None
-    while abs(value - shut) > TOLERANCE * abs(value):
-        middle = (value + shut) / 2
-        label = _opens(adviser, job.with_value(fact, middle))
-        if label is None:
-            shut = middle
-        else:
-            value, then = middle, label
-    return value, then
 
-
-def _pairs(adviser: Adviser, out: Outcome, facts: list[str]) -> Iterator[Opening]:
-    """Yield pairs of changes where none alone is enough: one fact freed as far as it goes, the other as little as needed."""
-    for first, second in combinations(facts, 2):
-        freed = _freed(adviser, out, first)
-        if freed is None:
-            continue
-        job = out.job.with_value(first, freed)
-        changed = _smallest(adviser, job, out, second)
-        if changed is None:
-            continue
-        back = _smallest(adviser, out.job.with_value(second, changed[0]), out, first)
-        if back is not None:
-            changes = {first: back[0], second: changed[0]}
-            yield Opening(changes, _text(adviser, out, changes), back[1])
-
-
-def _freed(adviser: Adviser, out: Outcome, fact: str) -> Any:
-    current = out.situation.value(fact)
-    if isinstance(current, bool):
-        return not current
-    if isinstance(current, int | float):
-        return current / 4 if fact in LESS_IS_EASIER else current * 4
-    return None
-
-
-def _machines(adviser: Adviser, out: Outcome) -> Iterator[Opening]:
-    """Yield the first machine classes of the knowledge on which the same job is possible."""
-    kept = {
-        name: entry
-        for name, entry in out.job.given.items()
-        if not name.startswith("machine.") or name == "machine.fluids"
-    }
-    found = 0
-    for name, machine in adviser.knowledge.machines.items():
-        job = replace(out.job, given=kept, machine_name=name)
-        if found < 2 and (then := _opens(adviser, job)) is not None:
-            found += 1
-            yield Opening({"machine.name": name}, f"on a machine such as '{machine.title}'", then)
+    def _machines(self) -> Iterator[Opening]:
+        """Yield the first machines of the knowledge on which the same job is possible."""
+        job = self._out.job
+        kept = {
+            name: entry
+            for name, entry in job.given.items()
+            if not name.startswith("machine.") or name == "machine.fluids"
+        }
+        found = 0
+        for name, machine in self._adviser.knowledge.machines.items():
+            changed = replace(job, given=kept, machine_name=name)
+            if found < MOST_MACHINES and self._opens(changed):
+                text = f"on a machine such as '{machine.title}'"
+                opening = self._verified({"machine.name": name}, changed, text)
+                if opening is not None:
+                    found += 1
+                    yield opening
 
 
 def _text(adviser: Adviser, out: Outcome, changes: dict[str, Any]) -> str:
