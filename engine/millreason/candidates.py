@@ -4,11 +4,11 @@ from __future__ import annotations
 
 import heapq
 import math
-from collections.abc import Iterable, Iterator, Mapping
+from collections.abc import Container, Iterable, Iterator, Mapping
 from dataclasses import dataclass
 from functools import cached_property
 from itertools import product
-from typing import TYPE_CHECKING, NamedTuple
+from typing import TYPE_CHECKING, Any, NamedTuple
 
 from millreason.trace import Evidence, Ledger, OptionLedger
 
@@ -185,8 +185,11 @@ class Catalogue:
         self._mounting_of: dict[tuple[str, str], str | None] = {}
         self._best_mounting: dict[tuple[str, ...], str | None] = {}
 
-    def best_first(self) -> Iterator[Candidate]:
-        """Yield every candidate whose parts are not ruled out, best evidence first."""
+    def best_first(self, dead: Container[tuple[Any, ...]] = ()) -> Iterator[Candidate]:
+        """Yield every candidate whose parts are not ruled out, best evidence first.
+
+        A body of a size that is in `dead` by then, as (family, size, None), is passed over with all its parts.
+        """
         lanes = [lane for place, family in enumerate(self._cutters.families) if (lane := self._lane(place, family))]
         heap = [(-lane.score(0, 0), lane.place, 0, 0) for lane in lanes]
         by_place = {lane.place: lane for lane in lanes}
@@ -194,11 +197,13 @@ class Catalogue:
         while heap:
             _, place, row, column = heapq.heappop(heap)
             lane = by_place[place]
-            candidate = self._candidate(lane, row, column)
-            if candidate is not None:
-                yield candidate
-            if column + 1 < len(lane.parts):
-                heapq.heappush(heap, (-lane.score(row, column + 1), place, row, column + 1))
+            body = lane.family.id, lane.sizes[row][1].label, None
+            if body not in dead:
+                candidate = self._candidate(lane, row, column)
+                if candidate is not None:
+                    yield candidate
+                if column + 1 < len(lane.parts):
+                    heapq.heappush(heap, (-lane.score(row, column + 1), place, row, column + 1))
             if column == 0 and row + 1 < len(lane.sizes):
                 heapq.heappush(heap, (-lane.score(row + 1, 0), place, row + 1, 0))
 

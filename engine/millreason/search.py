@@ -38,7 +38,7 @@ class Search:
         """Try candidates, best evidence first, with the options in `only`."""
         out = self._out
         dead: set[Kin] = set()
-        for candidate in self._candidates(only):
+        for candidate in self._candidates(only, dead):
             if self._settled(candidate):
                 break
             if any(candidate.options.get(pick, option) != option for pick, option in only.items()):
@@ -50,14 +50,14 @@ class Search:
                 dead.update(self._ruled_out_with(tried))
         out.stands.sort(key=lambda tried: -tried.standing)
 
-    def _candidates(self, only: Mapping[str, str]) -> Iterator[Candidate]:
+    def _candidates(self, only: Mapping[str, str], dead: set[Kin]) -> Iterator[Candidate]:
         out, cutters = self._out, self._adviser.knowledge.cutters
         assert out.ledgers is not None
         offered = self._interface.mountings.options
         own = own_cutters(out.job, self._adviser.knowledge)
         if own:
             return iter(own_candidates(own, cutters, out.ledgers, offered))
-        return Catalogue(cutters, out.ledgers, out.job.units, offered, only).best_first()
+        return Catalogue(cutters, out.ledgers, out.job.units, offered, only).best_first(dead)
 
     def _settled(self, candidate: Candidate) -> bool:
         """Whether no candidate from here on can beat the best, and enough runners-up are known."""
@@ -133,4 +133,5 @@ def _kin(candidate: Candidate) -> tuple[Kin, Kin, Kin, Kin]:
 
 def identity_of(candidate: Candidate) -> Kin:
     """Return everything in which a candidate can differ from another."""
-    return *_kin(candidate)[2], candidate.teeth, candidate.mounting, candidate.pockets
+    _, cut, *_ = _kin(candidate)
+    return *cut, candidate.teeth, candidate.corner.corner, candidate.wiper, candidate.mounting, candidate.pockets
