@@ -57,6 +57,7 @@ def write_answer(adviser: Adviser, out: Outcome, openings: bool = True) -> Answe
         notes=[*out.unit_doubts, *out.notes],
         refusal=refusal,
         runners_up=[] if held or not chosen else [_candidate(tried, "stands") for tried in _others(out)],
+        existing=_existing(adviser, out) if chosen and not held else None,
         robustness=robustness(adviser, out, chosen) if chosen and not held else "",
         trace=_trace(adviser, out, chosen, held),
         engine=adviser.stages["weigh"].engine_name,
@@ -173,6 +174,16 @@ def _candidate(tried: Tried, outcome: str) -> CandidateRecord:
         tried.candidate.label, picks, tried.candidate.evidence, tried.lowered, tried.standing, outcome,  # type: ignore[arg-type]
         list(tried.reasons), list(tried.limits), numbers,
     )  # fmt: skip
+
+
+def _existing(adviser: Adviser, out: Outcome) -> CandidateRecord | None:
+    """Return how the cutter that is in use would do in this job: it stands, or is rejected with the limits it breaks."""
+    if out.job.existing is None:
+        return None
+    outcome = adviser.decide(replace(out.job, cutters=(out.job.existing,), existing=None))
+    if outcome.stands:
+        return _candidate(outcome.stands[0], "stands")
+    return _candidate(outcome.rejected[0], "rejected") if outcome.rejected else None
 
 
 def _refusal(adviser: Adviser, out: Outcome, openings: bool) -> Refusal:

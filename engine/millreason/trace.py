@@ -321,6 +321,7 @@ class Answer:
     version: str
     knowledge_hash: str
     provenance: dict[str, int] = field(default_factory=dict)
+    existing: CandidateRecord | None = None
 
     @property
     def exit_code(self) -> int:

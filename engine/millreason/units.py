@@ -181,7 +181,7 @@ def _expression(unit: str) -> str:
 
 
 # How a stored unit is shown to a reader who works in inches: unit and decimals; metric decimals beside it.
-_INCH_SHOWN = {
+INCH_SHOWN = {
     "mm": ("in", 4), "um": ("uin", 0), "kg": ("lb", 1), "N": ("lbf", 0), "kW": ("hp", 2), "N.m": ("lbf.ft", 1),
     "m/min": ("sfm", 0), "mm/min": ("in/min", 1), "cm3/min": ("in3/min", 2), "MPa": ("psi", 0),
 }  # fmt: skip
@@ -202,7 +202,9 @@ _CUBIC_INCH_IN_CM3 = 16.387064
 
 
 def plain(value: float, decimals: int = 3) -> str:
-    """Return a number rounded for a reader, without needless zeros."""
+    """Return a number rounded for a reader: at most so many decimals, four figures from one upwards, no needless zeros."""
+    if abs(value) >= 1:
+        decimals = min(decimals, max(0, 3 - int(math.log10(abs(value)))))
     text = f"{value:.{decimals}f}"
     if "." in text:
         text = text.rstrip("0").rstrip(".")
@@ -212,8 +214,8 @@ def plain(value: float, decimals: int = 3) -> str:
 def show(value: float, unit: str, system: str = "metric") -> str:
     """Return a value with its unit, and for a reader in inches the inch value first, metric in brackets."""
     metric = f"{plain(value, _DECIMALS.get(unit, 3))}{'%' if unit == 'percent' else f' {unit}' if unit else ''}"
-    if system != "inch" or unit not in _INCH_SHOWN:
+    if system != "inch" or unit not in INCH_SHOWN:
         return metric
-    other, decimals = _INCH_SHOWN[unit]
+    other, decimals = INCH_SHOWN[unit]
     converted = value / _CUBIC_INCH_IN_CM3 if unit == "cm3/min" else convert(value, unit, other)
     return f"{plain(converted, decimals)} {other} ({metric})"
