@@ -15,14 +15,16 @@ import random
 import sys
 import time
 from collections import Counter, defaultdict
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, field, replace
 from pathlib import Path
 from typing import Any
 
 from acceptance import Case, load_cases, run_case
 from millreason.choice import Adviser, load_adviser
-from millreason.rulebook import Rule
+from millreason.facts import Situation
+from millreason.inference import Firing
+from millreason.rulebook import Rule, RuleBook
 from millreason.stages import Stage
 from mutants import KINDS, Mutant, mutants
 from rule_trials import Bench, Trial, load_trials, short
@@ -57,43 +59,67 @@ class Trials:
         return self._bench.fires(rule, trial.fires) and not self._bench.fires(rule, trial.misses)
 
 
+@dataclass(frozen=True)
+class Baseline:
+    """A case as the rules answer it unchanged: how long it takes, what comes out, which rules fired."""
+
+    case: Case
+    taken_s: float
+    outcome: Any
+    fired: frozenset[str]
+
+
+class Recorder:
+    """A stage that notes which of its rules fire."""
+
+    def __init__(self, stage: Stage, fired: set[str]) -> None:
+        self._stage = stage
+        self._fired = fired
+
+    def run(self, situation: Situation) -> list[Firing]:
+        firings = self._stage.run(situation)
+        self._fired.update(firing.rule for firing in firings)
+        return firings
+
+    def __getattr__(self, name: str) -> Any:
+        return getattr(self._stage, name)
+
+
 class Cases:
     """Holds mutants against the acceptance cases, the quickest first."""
 
     def __init__(self, adviser: Adviser, cases: Iterable[Case], slowest_s: float = SLOW_S) -> None:
         self._adviser = adviser
-        self._baseline: list[tuple[float, Case, Any]] = []
-        for case in cases:
-            begun = time.perf_counter()
-            outcome = self._outcome(adviser, case)
-            taken = time.perf_counter() - begun
-            if taken <= slowest_s:
-                self._baseline.append((taken, case, outcome))
-        self._baseline.sort(key=lambda entry: entry[0])
+        timed = sorted((self._run_unchanged(case) for case in cases), key=lambda entry: entry.taken_s)
+        self._baseline = [entry for entry in timed if entry.taken_s <= slowest_s]
 
     @property
     def names(self) -> list[str]:
         """The cases that are used."""
-        return [case["path"].stem for _, case, _ in self._baseline]
+        return [entry.case["path"].stem for entry in self._baseline]
+
+    @property
+    def fired(self) -> frozenset[str]:
+        """Every rule that fires in some case."""
+        return frozenset().union(*(entry.fired for entry in self._baseline))
 
     def notice(self, mutant: Mutant, most: int | None = None) -> str:
         """Return the first case whose score or picks change, or the empty text."""
         changed = self._mutated(mutant)
-        for _, case, before in self._baseline[:most]:
-            if self._outcome(changed, case) != before:
-                return str(case["path"].stem)
+        may_fire_anew = mutant.kind in ("condition flipped", "threshold moved")
+        # A rule that did not fire, and whose conditions are as before, cannot change the answer.
+        touched = [entry for entry in self._baseline if may_fire_anew or mutant.rule_id in entry.fired]
+        for entry in touched[:most]:
+            if _outcome(changed, entry.case) != entry.outcome:
+                return str(entry.case["path"].stem)
         return ""
 
-    @staticmethod
-    def _outcome(adviser: Adviser, case: Case) -> Any:
-        picks: list[Any] = []
-
-        def solve(path: Path) -> dict[str, Any]:
-            answer = adviser.choose_file(path).to_dict()
-            picks.append((answer.get("verdict"), answer.get("picks")))
-            return answer
-
-        return run_case(case, solve), picks
+    def _run_unchanged(self, case: Case) -> Baseline:
+        fired: set[str] = set()
+        watched = _copy(self._adviser, {name: Recorder(stage, fired) for name, stage in self._adviser.stages.items()})
+        begun = time.perf_counter()
+        outcome = _outcome(watched, case)
+        return Baseline(case, time.perf_counter() - begun, outcome, frozenset(fired))
 
     def _mutated(self, mutant: Mutant) -> Adviser:
         """Return an adviser with the mutant; the stages that it does not touch are shared."""
@@ -104,14 +130,31 @@ class Cases:
             del rules[mutant.rule_id]
         else:
             rules[mutant.rule_id] = mutant.rule
-        after = Adviser(
-            before.knowledge, before.materials, before.vocabulary, replace(book, rules=rules), before.engine
-        )
+        after = replace(book, rules=rules)
         stage = "size" if touched.stage == "weigh" and touched.about_size else touched.stage
-        wanted = after.rulebook.stage(touched.stage, about_size=stage == "size")
-        changed = Stage(wanted, after.rulebook, after.vocabulary, before.engine)
-        after.__dict__["stages"] = {**before.stages, stage: changed}
-        return after
+        wanted = after.stage(touched.stage, about_size=stage == "size")
+        changed = Stage(wanted, after, before.vocabulary, before.engine)
+        return _copy(before, {**before.stages, stage: changed}, after)
+
+
+def _copy(adviser: Adviser, stages: Mapping[str, Any], book: RuleBook | None = None) -> Adviser:
+    """Return an adviser with the same knowledge and the given stages, which are not compiled again."""
+    rules = book or adviser.rulebook
+    copied = Adviser(adviser.knowledge, adviser.materials, adviser.vocabulary, rules, adviser.engine)
+    copied.__dict__["stages"] = dict(stages)
+    return copied
+
+
+def _outcome(adviser: Adviser, case: Case) -> Any:
+    """Return the score of a case, and verdict and picks of each of its answers."""
+    picks: list[Any] = []
+
+    def solve(path: Path) -> dict[str, Any]:
+        answer = adviser.choose_file(path).to_dict()
+        picks.append((answer.get("verdict"), answer.get("picks")))
+        return answer
+
+    return run_case(case, solve), picks
 
 
 @dataclass
@@ -137,21 +180,35 @@ class Tally:
             share = f"{(trials + cases) / tried:.1%}" if tried else "-"
             rows.append(f"{kind:<22}{tried:>9}{trials:>11}{cases:>10}{share:>10}")
         rows.append(f"{'all':<22}{self.tried.total():>9}{'':>21}{self.share:>10.1%}")
-        return rows + [f"survivor: {mutant}" for mutant in self.survivors]
+        return rows + [f"survivor: {mutant} ({WHY_IT_LIVES[mutant.kind]})" for mutant in self.survivors]
 
 
-def run(adviser: Adviser, trials: Trials, cases: Cases | None, few: int | None, chosen: Sequence[Mutant]) -> Tally:
-    """Hold mutants against the trials, and those that survive against cases."""
+WHY_IT_LIVES = {
+    "rule dropped": "no trial fires the rule",
+    "condition flipped": "no trial fires the rule on a value of this fact",
+    "threshold moved": "no trial stands close to this threshold",
+    "conclusion swapped": "no trial states what the rule gives in words that differ",
+    "strength changed": "no trial states what the rule gives",
+}
+
+
+def run(trials: Trials, chosen: Sequence[Mutant]) -> Tally:
+    """Hold mutants against the trials."""
     tally = Tally()
     for mutant in chosen:
         tally.tried[mutant.kind] += 1
         if trials.notice(mutant):
             tally.by_trials[mutant.kind] += 1
-        elif cases is not None and cases.notice(mutant, few):
-            tally.by_cases[mutant.kind] += 1
         else:
             tally.survivors.append(mutant)
     return tally
+
+
+def second_look(tally: Tally, cases: Cases, most: int | None) -> None:
+    """Hold the survivors against the cases."""
+    left = [mutant for mutant in tally.survivors if not cases.notice(mutant, most)]
+    tally.by_cases.update(mutant.kind for mutant in tally.survivors if mutant not in left)
+    tally.survivors = left
 
 
 def all_mutants(adviser: Adviser) -> list[Mutant]:
@@ -174,12 +231,13 @@ def main(arguments: list[str] | None = None) -> int:
     options = parser.parse_args(arguments)
     adviser = load_adviser(engine="twin")
     found = all_mutants(adviser)
-    cases = Cases(adviser, load_cases())
-    tally = run(adviser, Trials(adviser, load_trials()), cases, None if options.all else FEW_CASES, found)
+    tally = run(Trials(adviser, load_trials()), found)
+    cases = Cases(adviser, load_cases()) if tally.survivors or options.by_cases else None
+    if cases is not None:
+        second_look(tally, cases, None if options.all else FEW_CASES)
     print("\n".join(tally.lines()))
-    if options.by_cases:
-        drawn = random.Random(options.seed).sample(found, options.by_cases)
-        told = noticed_by_cases(cases, drawn)
+    if cases is not None and options.by_cases:
+        told = noticed_by_cases(cases, random.Random(options.seed).sample(found, options.by_cases))
         print(f"by the cases alone: {sum(bool(case) for _, case in told)} of {len(told)} drawn by lot")
     return 0 if tally.share >= TARGET else 1
 
