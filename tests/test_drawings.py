@@ -106,7 +106,7 @@ def test_the_edge_is_drawn_at_its_angle(kappa: float) -> None:
 
 def test_a_round_insert_is_drawn_round() -> None:
     drawing = rakes_and_lead(EdgeAngles(34.0, None, 0.0, 0.0, 2.0, round_insert=True))
-    assert any(circle.get("r") == "75" for circle in root(drawing).iter(f"{SVG}circle"))
+    assert any(circle.get("r") == "58" for circle in root(drawing).iter(f"{SVG}circle"))
 
 
 def test_power_falls_with_speed_below_the_base_speed_and_stays_above() -> None:

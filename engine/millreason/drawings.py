@@ -151,8 +151,11 @@ def _entry_and_exit(stage: _Stage) -> list[str]:
 
 
 def _rim_label(view: CutView, at: Point, word: str, angle: float, gap: float, below: float) -> str:
-    y = at[1] + (18 if below > 0 else -12)
-    return svg.text((at[0] + 12, y), f"{word} {plain(angle, 1)}°, overhang {show(gap, 'mm', view.units)}", colour=SIGN)
+    """Write angle and overhang beside a point of the rim, on the side away from the cutter's middle."""
+    first, second = (16.0, 30.0) if below > 0 else (-22.0, -8.0)
+    place = at[0] + 12
+    over = svg.text((place, at[1] + second), f"overhang {svg.length(gap, view.units)}", colour=SIGN)
+    return svg.text((place, at[1] + first), f"{word} {plain(angle, 1)}°", colour=SIGN) + over
 
 
 def _width_of_cut(stage: _Stage) -> list[str]:
@@ -169,12 +172,16 @@ class _Face:
     """Places the face and its passes on the drawing."""
 
     lanes: PassMap
-    left: float = 95.0
 
     @property
     def scale(self) -> float:
         lanes = self.lanes
-        return min(340.0 / lanes.length_mm, 230.0 / max(lanes.width_mm, lanes.diameter_mm), 3.0)
+        return min(300.0 / lanes.length_mm, 230.0 / max(lanes.width_mm, lanes.diameter_mm), 3.0)
+
+    @property
+    def left(self) -> float:
+        """Return where the face begins: centred, with room for the cutter before it."""
+        return max((520 - self.size[0]) / 2, self.radius + 16)
 
     @property
     def size(self) -> Point:
@@ -254,14 +261,14 @@ _FLOOR, _FOOT, _DEEP, _WORK_END = 140.0, 65.0, 60.0, 185.0
 
 
 def _round_section(angles: EdgeAngles) -> list[str]:
-    radius, foot = 75.0, _FOOT + 10
-    run = math.sqrt(radius**2 - (radius - _DEEP) ** 2)
-    rim = svg.arc((foot, _FLOOR), (foot + run, _FLOOR - _DEEP), radius, clockwise=False)
+    radius, deep, foot = 58.0, 42.0, _FOOT + 10
+    run = math.sqrt(radius**2 - (radius - deep) ** 2)
+    rim = svg.arc((foot, _FLOOR), (foot + run, _FLOOR - deep), radius, clockwise=False)
     rest = f" H{number(_WORK_END)} V165 H10 V{number(_FLOOR)} Z"
     return [
         svg.path(rim + rest, INK, CUT, 1),
         svg.circle((foot, _FLOOR - radius), radius, TOOL, GLASS, 2),
-        *_depth_mark(angles, _DEEP),
+        *_depth_mark(angles, deep),
         svg.text((15, 185), "round insert: kappa follows the depth"),
     ]
 

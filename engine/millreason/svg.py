@@ -6,7 +6,7 @@ import math
 from collections.abc import Iterable, Sequence
 from html import escape
 
-from millreason.units import plain, show
+from millreason.units import show
 
 INK, WORK, CUT, TOOL, SIGN, NEAR, PALE = (
     "#1d2429",
@@ -23,8 +23,9 @@ Point = tuple[float, float]
 
 
 def number(value: float) -> str:
-    """Return a coordinate as finely as a drawing needs it."""
-    return plain(value, 2)
+    """Return a coordinate as finely as a drawing needs it, without needless zeros."""
+    text = f"{value:.2f}".rstrip("0").rstrip(".")
+    return "0" if text == "-0" else text
 
 
 def points_text(points: Iterable[Point]) -> str:
@@ -52,9 +53,14 @@ def text(at: Point, words: str, anchor: str = "start", colour: str = INK, size: 
     return f'<text {place} fill="{colour}" font-size="{number(size)}" {rim}>{escape(words)}</text>'
 
 
+def length(value_mm: float, units: str) -> str:
+    """Return a computed length as finely as it can be set: to 0.01 mm."""
+    return show(round(value_mm, 2), "mm", units)
+
+
 def stacked(at: Point, length_mm: float, units: str) -> list[str]:
     """Write a length, and the metric value on a second line where the first is in inches."""
-    first, _, second = show(length_mm, "mm", units).partition(" (")
+    first, _, second = length(length_mm, units).partition(" (")
     lines = [text(at, first, size=11)]
     return lines + ([text((at[0], at[1] + 13), f"({second}", size=11)] if second else [])
 

@@ -4,16 +4,13 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from millreason import charts
+from millreason.report.margins import margins, numbers
 from millreason.report.opening import questions
 from millreason.report.page import (
     Block,
-    Fields,
     Fold,
-    Gallery,
     Item,
     Items,
-    Picture,
     Say,
     Section,
     Table,
@@ -22,12 +19,11 @@ from millreason.report.page import (
     without_empty_columns,
 )
 from millreason.report.record import record_sections
-from millreason.report.sheet import TONES, Line, by_severity, steps_table
+from millreason.report.sheet import TONES, by_severity
 from millreason.report.words import (
     basis_text,
     clean,
     count,
-    fact,
     fact_words,
     job_key,
     limit_number,
@@ -40,7 +36,6 @@ from millreason.report.words import (
     value_text,
 )
 from millreason.trace import Answer, CandidateRecord, Evidence, FactRecord, Ledger, OptionLedger
-from millreason.units import show
 
 _ASSUMED = (
     "Assumed because the job does not say. To change one, write it in the job file under the name given, "
@@ -48,22 +43,6 @@ _ASSUMED = (
 )
 
 _MAIN_PICKS = ("cutter_class", "diameter_mm", "kappa_deg", "rake", "pitch")
-_LINES: tuple[Line, ...] = (
-    ("feed per revolution fn", "mm", lambda step: step.feed_per_rev_mm),
-    ("largest chip thickness hex", "mm", lambda step: step.hex_mm),
-    ("mean chip thickness hm", "mm", lambda step: step.mean_chip_mm),
-    ("removal rate Q", "cm3/min", lambda step: step.removal_rate_cm3_min),
-    ("specific cutting force kc", "N/mm2", lambda step: step.specific_force_n_mm2),
-    ("net power, sharp edges", "kW", lambda step: step.net_power_kw),
-    ("net power, worn edges", "kW", lambda step: step.net_power_worn_kw),
-    ("net power the spindle has", "kW", lambda step: step.available_power_kw),
-    ("torque, mean", "N.m", lambda step: step.torque_nm),
-    ("torque, peak", "N.m", lambda step: step.peak_torque_nm),
-    ("tangential force, peak", "N", lambda step: step.tangential_force_n),
-    ("radial force", "N", lambda step: step.radial_force_n),
-    ("axial force", "N", lambda step: step.axial_force_n),
-    ("travel of each pass", "mm", lambda step: step.travel_mm),
-)
 
 
 def argument_sections(answer: Answer) -> list[Section]:
@@ -74,8 +53,8 @@ def argument_sections(answer: Answer) -> list[Section]:
     made = [
         _why(answer),
         _lost(answer),
-        _margins(answer),
-        _numbers(answer),
+        margins(answer),
+        numbers(answer),
         _assumptions(answer),
         _notes(answer),
         asked,
@@ -205,55 +184,6 @@ def _rejected_rows(candidate: CandidateRecord, units: str) -> list[tuple[str, ..
         )
         for place, limit in enumerate(candidate.limits)
     ]
-
-
-# ---------------------------------------------------------------------- margins
-def _margins(answer: Answer) -> Section | None:
-    if not answer.checks:
-        return None
-    rows = tuple(
-        (
-            clean(check.name),
-            show(check.value, check.unit, answer.units),
-            show(check.limit, check.unit, answer.units),
-            f"{check.use_percent:.0f} %",
-            check.verdict,
-            clean(check.by),
-        )
-        for check in answer.checks
-    )
-    table = Table(("check", "value", "limit", "use", "verdict", "by"), rows, frozenset({1, 2, 3}))
-    bars = [charts.Bar(clean(check.name), check.use_percent, check.verdict) for check in answer.checks]
-    drawn = Picture(charts.margin_bars(bars), "Use of each limit; the line is 100 %")
-    rests = tuple(Item(clean(c.name), (basis_text(c.basis),)) for c in answer.checks if c.basis)
-    fold = Fold("What the limits rest on", (Items(rests),)) if rests else None
-    return section("margins", "Margins", present(table, Gallery((drawn, *_drive(answer))), fold))
-
-
-def _numbers(answer: Answer) -> Section | None:
-    if answer.plan is None or not recommends(answer):
-        return None
-    other = [
-        (option(step.name), show(step.unit_power_kw, "kW", answer.units))
-        for step in answer.plan.steps
-        if step.unit_power_kw is not None
-    ]
-    told = Fields(tuple(other), "Net power by the unit-power method, an independent check") if other else None
-    return section("plan", "The cut in numbers", present(steps_table(answer.plan.steps, _LINES, answer.units), told))
-
-
-def _drive(answer: Answer) -> list[Picture]:
-    """Draw the spindle's curve where the trace holds it as points of speed and net power."""
-    curve, steps = fact(answer, "machine.net_curve"), answer.plan.steps if answer.plan else []
-    if curve is None or not isinstance(curve.value, list) or not steps:
-        return []
-    pairs = [point for point in curve.value if isinstance(point, list) and len(point) == 2]
-    if not pairs:
-        return []
-    step = max(steps, key=lambda entry: entry.net_power_worn_kw / entry.available_power_kw)
-    work = charts.WorkingPoint(step.spindle_speed_rpm, step.net_power_kw, step.net_power_worn_kw)
-    drawn = charts.drive_curve([(float(speed), float(power)) for speed, power in pairs], work)
-    return [Picture(drawn, f"Power and torque at the cutter; the dots are the {option(step.name)}")]
 
 
 # ---------------------------------------------------------------------- assumptions and cautions

@@ -3,11 +3,9 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from dataclasses import replace
 
 from millreason import drawings
 from millreason.report.page import (
-    Block,
     Fields,
     Gallery,
     Item,
@@ -22,17 +20,16 @@ from millreason.report.page import (
 )
 from millreason.report.words import (
     clean,
-    contact_text,
     corner_text,
     count,
     fact_number,
     fact_shown,
     joined,
     lead_text,
-    length,
     option,
     rake_text,
 )
+from millreason.svg import length
 from millreason.trace import Answer, CautionRecord, Picks, PlanRecord, Step
 from millreason.units import plain, show
 
@@ -42,7 +39,6 @@ TONES: dict[str, Tone] = {"note": "note", "caution": "caution", "warning": "warn
 _ORDER = {"warning": 0, "caution": 1, "note": 2}
 STOP_AT_SOUND = "the sound changes, it chatters, or chips turn blue, dusty or welded together"
 STOP_AT_EDGE = "burr, edge break-out or a step between passes grows"
-_NOT_BRIEF = ("Arc", "Teeth in cut", "Travel", "Edge sets")
 _LINES: tuple[Line, ...] = (
     ("spindle speed n", "rpm", lambda step: step.spindle_speed_rpm),
     ("cutting speed vc", "m/min", lambda step: step.cutting_speed_m_min),
@@ -71,16 +67,7 @@ def setup_sheet(answer: Answer, picks: Picks, plan: PlanRecord) -> Section:
         Items(cautions, title="Cautions"),
         Say(f"Also noted under Cautions: {', '.join(notes)}.") if notes else None,
     )
-    return Section("sheet", "Setup sheet", blocks, tuple(_brief(block) for block in blocks))
-
-
-def _brief(block: Block) -> Block:
-    """Leave out of the short form what is not set or read at the machine."""
-    if isinstance(block, Fields):
-        return replace(block, rows=tuple(row for row in block.rows if row[0] not in _NOT_BRIEF))
-    if isinstance(block, Pair):
-        return Pair(block.left, tuple(_brief(inner) for inner in block.right))
-    return block
+    return Section("sheet", "Setup sheet", blocks, blocks)
 
 
 def by_severity(cautions: Sequence[CautionRecord]) -> list[CautionRecord]:
@@ -145,34 +132,20 @@ def _use(answer: Answer, picks: Picks, plan: PlanRecord) -> Rows:
         ("Centre", f"{lengths(plan.centre_offset_mm)} off the middle of the cut"),
         ("Overhang", f"{lengths(plan.entry_gap_mm)} where teeth enter, {lengths(exit_gap)} where they leave"),
         ("Entry", joined(option(plan.entry), clean(plan.entry_feed))),
-        ("Arc", _arc(plan)),
-        ("Teeth in cut", _teeth(plan)),
         ("Fluid", option(plan.fluid)),
     )
-
-
-def _arc(plan: PlanRecord) -> str:
-    enter, leave = plain(plan.entry_angle_deg, 1), plain(plan.exit_angle_deg, 1)
-    return f"teeth enter at {enter} deg, leave at {leave} deg ({plain(plan.arc_deg, 1)} deg in cut)"
-
-
-def _teeth(plan: PlanRecord) -> str:
-    teeth = " / ".join(plain(number, 2) for number in plan.teeth_in_cut)
-    first = f"; first contact at {contact_text(plan.first_contact)}" if plan.first_contact else ""
-    return f"{teeth} (least / mean / most){first}"
 
 
 def _after(answer: Answer, plan: PlanRecord) -> Rows:
     bounds = " to ".join(show(bound, "um", answer.units) for bound in plan.ra_bounds_um)
     spread = f"{count(plan.time_low_min)} to {count(plan.time_high_min)}"
     life, parts = count(plan.tool_life_min), count(plan.parts_per_edge_set)
+    sets = f"{count(plan.edge_sets_for_batch)} set{'' if plan.edge_sets_for_batch == 1 else 's'} of edges"
     finish = f"Ra about {show(plan.expected_ra_um, 'um', answer.units)}"
     rows = (
         ("Time", f"{count(plan.time_min)} min a part ({spread}); in feed {count(plan.feed_time_min)} min"),
-        ("Travel", clean(plan.travel_convention)),
         ("Finish", f"{finish} ({bounds})" if bounds else finish),
-        ("Index edges", f"after {life} min in cut, about {parts} parts"),
-        ("Edge sets", f"{count(plan.edge_sets_for_batch)} for the batch"),
+        ("Index edges", f"after {life} min in cut, about {parts} parts; {sets} for the batch"),
     )
     if plan.cost_per_part is None:
         return rows

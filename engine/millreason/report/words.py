@@ -288,11 +288,6 @@ def contact_text(points: str) -> str:
     return f"{listing(_CONTACT[point] for point in points)} ({points})"
 
 
-def length(value_mm: float, system: str) -> str:
-    """Return a computed length as finely as it can be set: to 0.1 mm from 10 mm up, else to 0.01 mm."""
-    return show(round(value_mm, 1 if abs(value_mm) >= 10 else 2), "mm", system)
-
-
 def count(number: float) -> str:
     """Return a time or a count as finely as it is known: two or three digits."""
     size = abs(number)
