@@ -253,7 +253,7 @@ def size_facts(
     slot = fact("work.feature") == "slot"
     most_of_one = 1.0 if slot else one_pass
     most_of_several = 1.0 if slot else min(practice["width_to_diameter_most"].number, most)
-    overlap = practice["pass_overlap_mm"].number
+    overlap = min(practice["pass_overlap_mm"].number, most_of_several * nominal_mm / 2)
     passes = (
         1 if single or width <= most_of_one * nominal_mm else passes_across(width, nominal_mm, overlap, most_of_several)
     )
@@ -274,6 +274,9 @@ def size_facts(
             else fact("machine.changer_empty_mm", fact("machine.changer_full_mm")),
         ),
         "size.to_changer_full": _over(nominal_mm, fact("machine.changer_full_mm")),
+        "size.to_pocket_corner": _over(nominal_mm / 2, fact("work.pocket_corner_mm"))
+        if fact("work.feature") == "closed_pocket"
+        else None,
         "size.to_pocket": _over(nominal_mm, room_between_walls(fact)),
         "size.speed_use": speed / spindle.speed_max_rpm,
         "size.torque_share": min(available_power(spindle.net_curve, at) / full, 1.0),

@@ -35,6 +35,8 @@ def _candidate(cutter: OwnCutter, cutters: CuttersFile, ledgers: Ledgers, offere
     if family is None or not isinstance(diameter, int | float):
         return None
     size = _size(float(diameter), cutters)
+    if family.floor_diameter_mm(size) <= 0:
+        return None
     rakes = [(rake, edge) for rake in family.rakes for edge in rake.edges]
     rake, edge = max(
         rakes,
@@ -90,7 +92,9 @@ def _family(known: Any, cutters: CuttersFile) -> CutterFamily | None:
     if kappa is not None and nearest.insert_diameter_mm is None:
         changes["kappa_deg"] = float(kappa)
     if known.get("usable_depth_mm") is not None:
-        changes["usable_depth_mm"] = float(known["usable_depth_mm"])
+        depth = float(known["usable_depth_mm"])
+        # Measured at the outside, a longer edge would leave less floor: the angle of such a family bounds its depth.
+        changes["usable_depth_mm"] = min(depth, nearest.usable_depth_mm) if nearest.nominal_at == "outermost" else depth
     return nearest.model_copy(update=changes) if changes else nearest
 
 

@@ -65,8 +65,9 @@ class Planner:
     # ------------------------------------------------------------------ passes and position
     def _layout(self, candidate: Candidate, direction: str, sheet: Worksheet) -> Layout:
         width, diameter = self._fact("work.width_mm"), candidate.diameter_mm
-        overlap = self._number("pass_overlap_mm")
         ratio = min(self._number("width_to_diameter_most"), self._tuning.get("width_to_diameter_most", math.inf))
+        # A very small body cannot give away the usual overlap.
+        overlap = min(self._number("pass_overlap_mm"), ratio * diameter / 2)
         one_ratio = min(
             self._practice["width_to_diameter_one_pass"].high,
             self._tuning.get("width_to_diameter_most", math.inf),
@@ -87,7 +88,7 @@ class Planner:
         """Lay the passes along both walls; the first is buried to its full diameter, and the plan is made for that."""
         reach, count = min(width, diameter), 1
         if width > diameter and not forced:
-            overlap = self._number("pass_overlap_mm")
+            overlap = min(self._number("pass_overlap_mm"), diameter / 2)
             count = int(sheet.use("plan.passes_across", "", passes_across, width, diameter, overlap, 1.0))
         lap = (count * reach - width) / (count - 1) if count > 1 else 0.0
         arc = sheet.use("arc of contact", "deg", flush_arc, reach, diameter)
@@ -154,10 +155,7 @@ class Planner:
 
     def _feed(self, chip: float, kappa: float, layout: Layout, teeth: int, speed: float) -> float:
         feed = feed_for_chip_thickness(chip, kappa, layout.arc.entry_deg, layout.arc.exit_deg)
-        feed = min(
-            max(feed, self._tuning.get("feed_per_tooth_least_mm", 0.0)),
-            self._tuning.get("feed_per_tooth_most_mm", math.inf),
-        )
+        feed = max(feed, self._tuning.get("feed_per_tooth_least_mm", 0.0))
         return float(min(feed, self._fact("machine.feed_max_mm_min", math.inf) / (teeth * speed)))
 
     # ------------------------------------------------------------------ load
