@@ -101,6 +101,10 @@ class Ledgers:
         """Write one piece of evidence into the ledger of a pick."""
         self._evidence.setdefault(pick, {}).setdefault(option, []).append(evidence)
 
+    def evidence(self, pick: str, option: str) -> list[Evidence]:
+        """Return every word for or against an option."""
+        return list(self._evidence.get(pick, {}).get(option, ()))
+
     def scores(self, pick: str) -> dict[str, float | None]:
         """Return the balance of every option of a pick; None for one that is ruled out."""
         return {
