@@ -13,7 +13,13 @@ from collections.abc import Callable
 from pathlib import Path
 
 CASES = Path(__file__).resolve().parent.parent / "cases" / "accept"
-JOBS = ("wide-steel-plate", "aluminium-blocks-small-machine", "titanium-plate-roughing", "sealing-face-no-overlap-line", "too-little-to-quote")
+JOBS = (
+    "wide-steel-plate",
+    "aluminium-blocks-small-machine",
+    "titanium-plate-roughing",
+    "sealing-face-no-overlap-line",
+    "too-little-to-quote",
+)
 WARM_MARK_MS, COLD_MARK_S = 25.0, 0.7
 
 
@@ -46,7 +52,10 @@ def main() -> None:
             job = read_job(CASES / f"{name}.yaml", adviser.vocabulary, adviser.knowledge.interface_names)
             adviser.choose(job)
             warm = median_ms(lambda: adviser.choose(job), 15)  # noqa: B023 - called at once
-            print(f"warm choice, {engine:8s} {name:34s} {warm:7.1f} ms  {warm / yard:5.1f} yardsticks (mark {WARM_MARK_MS:g} ms)")
+            print(
+                f"warm choice, {engine:8s} {name:34s} {warm:7.1f} ms  {warm / yard:5.1f} yardsticks"
+                f" (mark {WARM_MARK_MS:g} ms)"
+            )
     command = [sys.executable, "-m", "millreason.cli", "choose", str(CASES / f"{JOBS[0]}.yaml")]
     cold = median_ms(lambda: subprocess.run(command, capture_output=True, check=True), 7) / 1000
     print(f"cold command: {cold:.2f} s  {cold * 1000 / yard:.0f} yardsticks (mark {COLD_MARK_S:g} s)")

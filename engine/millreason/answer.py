@@ -12,12 +12,15 @@ from millreason.openings import find_openings
 from millreason.plan_record import make_plan_record
 from millreason.trace import (
     Answer,
+    Calculation,
     CandidateRecord,
     CautionRecord,
     FactRecord,
+    FiringRecord,
     Picks,
     Question,
     Refusal,
+    SourceRecord,
     Trace,
     Verdict,
 )
@@ -177,7 +180,7 @@ def _candidate(tried: Tried, outcome: str) -> CandidateRecord:
 
 
 def _existing(adviser: Adviser, out: Outcome) -> CandidateRecord | None:
-    """Return how the cutter that is in use would do in this job: it stands, or is rejected with the limits it breaks."""
+    """Return how the cutter in use would do in this job: it stands, or is rejected with the limits it breaks."""
     if out.job.existing is None:
         return None
     outcome = adviser.decide(replace(out.job, cutters=(out.job.existing,), existing=None))
@@ -222,7 +225,24 @@ def _trace(adviser: Adviser, out: Outcome, chosen: Tried | None, held: bool) -> 
     calculations = chosen.plan.sheet.calculations() if chosen is not None and not held else []
     if verdict_of(out) in ("ask",):
         ledgers, candidates = [], []
-    return Trace(facts, firings, ledgers, candidates, calculations, out.candidates_possible)
+    sources = _sources(adviser, facts, firings, calculations)
+    return Trace(facts, firings, ledgers, candidates, calculations, out.candidates_possible, sources)
+
+
+def _sources(
+    adviser: Adviser, facts: list[FactRecord], firings: list[FiringRecord], calculations: list[Calculation]
+) -> list[SourceRecord]:
+    """Return every source that the facts, rules and formulas of an answer cite."""
+    cited = {record.basis.source for record in facts if record.basis} | {firing.basis.source for firing in firings}
+    cited.update(part.strip() for use in calculations for line in use.references for part in line.split(","))
+    known = adviser.knowledge.sources
+    return [
+        SourceRecord(
+            name, known[name].kind, known[name].author, known[name].title, known[name].edition or "", known[name].year
+        )
+        for name in sorted(cited)
+        if name in known
+    ]
 
 
 def _name(value: object) -> str:

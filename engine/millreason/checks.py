@@ -12,22 +12,36 @@ if TYPE_CHECKING:
     from millreason.outcome import Outcome, Tried
 
 NEAR = 0.85
-# Name, key, the use as a plan fact, value and limit as facts (or a plan fact and nothing), unit, and the formula behind.
+# Name, key, use, value and limit as facts (None where there is none), unit, and the formula behind.
 _FROM_FACTS = (
-    ("outermost diameter, neighbours full", "changer_full", "plan.changer_full_use", "plan.outermost_diameter_mm", "machine.changer_full_mm", "mm", "cutter knowledge"),
-    ("outermost diameter, neighbours empty", "changer_empty", "plan.changer_empty_use", "plan.outermost_diameter_mm", "machine.changer_empty_mm", "mm", "cutter knowledge"),
-    ("mass of the assembly", "changer_mass", "plan.mass_use", "plan.mass_kg", "machine.changer_mass_kg", "kg", "body.combined_mass"),
-    ("tipping moment", "changer_moment", "plan.moment_use", "plan.moment_nm", "machine.changer_moment_nm", "N.m", "body.tip_moment"),
-    ("finish Ra", "finish", "plan.ra_use", "plan.ra_um", "require.finish_ra_um", "um", "surface.roughness_with_runout"),
-    ("flatness", "flatness", "plan.flatness_use", None, "require.flatness_mm", "mm", "stiffness and tilt"),
-    ("insert corner", "corner", "plan.corner_use", "pick.corner_radius_mm", "work.corner_radius_mm", "mm", "cutter knowledge"),
-    ("table feed", "table_feed", "plan.feed_use", None, "machine.feed_max_mm_min", "mm/min", "motion.table_feed"),
-    ("lift over hold-down", "hold_down", "plan.lift_to_clamp", "plan.lift_n", None, "N", "holding.lift_force"),
-    ("stable depth", "stable_depth", "plan.stable_depth_use", "plan.depth_of_cut_mm", None, "mm", "stiffness.stable_depth"),
-    ("depth of cut in the insert", "usable_depth", "plan.depth_use", "plan.depth_of_cut_mm", None, "mm", "cutter knowledge"),
-    ("chips in the gullet", "gullet", "plan.gullet_use", None, None, "", "chip.gullet_fill"),
-    ("body speed", "body_speed", "plan.body_speed_use", "plan.spindle_speed_rpm", None, "rpm", "motion.spindle_speed"),
-    ("width over diameter", "width_to_diameter", None, "plan.width_to_diameter", None, "", "passes.balanced_width"),
+    ("outermost diameter, neighbours full", "changer_full", "plan.changer_full_use", "plan.outermost_diameter_mm",
+     "machine.changer_full_mm", "mm", "cutter knowledge"),
+    ("outermost diameter, neighbours empty", "changer_empty", "plan.changer_empty_use", "plan.outermost_diameter_mm",
+     "machine.changer_empty_mm", "mm", "cutter knowledge"),
+    ("mass of the assembly", "changer_mass", "plan.mass_use", "plan.mass_kg",
+     "machine.changer_mass_kg", "kg", "body.combined_mass"),
+    ("tipping moment", "changer_moment", "plan.moment_use", "plan.moment_nm",
+     "machine.changer_moment_nm", "N.m", "body.tip_moment"),
+    ("finish Ra", "finish", "plan.ra_use", "plan.ra_um",
+     "require.finish_ra_um", "um", "surface.roughness_with_runout"),
+    ("flatness", "flatness", "plan.flatness_use", None,
+     "require.flatness_mm", "mm", "stiffness and tilt"),
+    ("insert corner", "corner", "plan.corner_use", "pick.corner_radius_mm",
+     "work.corner_radius_mm", "mm", "cutter knowledge"),
+    ("table feed", "table_feed", "plan.feed_use", None,
+     "machine.feed_max_mm_min", "mm/min", "motion.table_feed"),
+    ("lift over hold-down", "hold_down", "plan.lift_to_clamp", "plan.lift_n",
+     None, "N", "holding.lift_force"),
+    ("stable depth", "stable_depth", "plan.stable_depth_use", "plan.depth_of_cut_mm",
+     None, "mm", "stiffness.stable_depth"),
+    ("depth of cut in the insert", "usable_depth", "plan.depth_use", "plan.depth_of_cut_mm",
+     None, "mm", "cutter knowledge"),
+    ("chips in the gullet", "gullet", "plan.gullet_use", None,
+     None, "", "chip.gullet_fill"),
+    ("body speed", "body_speed", "plan.body_speed_use", "plan.spindle_speed_rpm",
+     None, "rpm", "motion.spindle_speed"),
+    ("width over diameter", "width_to_diameter", None, "plan.width_to_diameter",
+     None, "", "passes.balanced_width"),
 )  # fmt: skip
 
 
@@ -131,11 +145,13 @@ def robustness(adviser: Adviser, out: Outcome, chosen: Tried) -> str:
     wear = practice["wear_factor"].number
     nominal = load.net_power_kw / load.available_kw
     worst = nominal * high * wear
-    words = f"Power takes {nominal * low * 100:.0f} to {nominal * high * 100:.0f}% of what the spindle has over the band of the force data with sharp edges"
+    span = f"{nominal * low * 100:.0f} to {nominal * high * 100:.0f}%"
+    words = f"Power takes {span} of what the spindle has over the band of the force data with sharp edges"
     if worst <= 1:
         return (
             f"{words}, and {worst * 100:.0f}% at the upper end with worn edges: the choice holds over the whole band."
         )
     if nominal * wear <= 1:
-        return f"{words}; worn edges at the upper end would take {worst * 100:.0f}%: change edges early or cut lighter if the material turns out hard."
+        remedy = "change edges early or cut lighter if the material turns out hard"
+        return f"{words}; worn edges at the upper end would take {worst * 100:.0f}%: {remedy}."
     return f"{words}; worn edges already take {nominal * wear * 100:.0f}%: there is no reserve."

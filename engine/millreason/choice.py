@@ -16,6 +16,7 @@ from millreason.knowledge import Knowledge, load_knowledge
 from millreason.limits import binding_limits
 from millreason.lookups import complete_situation, first_situation, look_up_usual, size_facts, unit_doubts
 from millreason.materials import Materials, load_materials
+from millreason.measures import BODY_FACTS
 from millreason.outcome import Outcome
 from millreason.own_cutters import own_cutters
 from millreason.rulebook import Conclusion, RuleBook, load_rules
@@ -300,7 +301,9 @@ class _Run:
     @cached_property
     def spindle(self) -> Spindle:
         """The machine's spindle."""
-        return spindle_of(self._situation, self._practice)
+        spindle = spindle_of(self._situation, self._practice)
+        self._situation.set("machine.net_curve", spindle.net_curve, "computed", "spindle")
+        return spindle
 
     def _search(self, only: Mapping[str, str]) -> None:
         out = self._out
@@ -310,7 +313,7 @@ class _Run:
     # ------------------------------------------------------------------ cautions
     def _caution(self) -> None:
         out, stage = self._out, self._adviser.stages["caution"]
-        situation = self._situation.with_facts(out.stands[0].facts if out.stands else {}, "plan")
+        situation = self._situation.with_facts(self._seen_by_cautions(), "plan")
         for name, value in self._answer_facts().items():
             situation.set(name, value, "computed", "answer")
         for firing in stage.run(situation):
@@ -319,6 +322,13 @@ class _Run:
             out.cautions.append(
                 (record, _filled(stage.rules[firing.rule].then, situation, self._vocabulary, out.job.units))
             )
+
+    def _seen_by_cautions(self) -> Mapping[str, Any]:
+        """Return the facts of the chosen candidate; while a condition is open, only its body is seen."""
+        facts = self._out.stands[0].facts if self._out.stands else {}
+        if not self._out.conditions:
+            return facts
+        return {name: value for name, value in facts.items() if name.startswith("pick.") or name in BODY_FACTS}
 
     def _answer_facts(self) -> dict[str, Any]:
         out = self._out

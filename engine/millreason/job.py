@@ -77,7 +77,8 @@ CUTTER_FIELDS: dict[str, tuple[str, str]] = {
     "cutter_class": ("cutter_class", "word"), "diameter": ("diameter_mm", "mm"), "teeth": ("teeth", "count"),
     "kappa": ("kappa_deg", "deg"), "lead": ("lead_deg", "deg"), "lead_convention": ("lead_convention", "word"),
     "pitch": ("pitch", "word"), "rake": ("rake", "word"), "corner": ("corner", "word"), "edge": ("edge", "word"),
-    "wiper": ("wiper", "word"), "pockets": ("pockets", "word"), "mounting": ("mounting", "word"), "hand": ("hand", "word"),
+    "wiper": ("wiper", "word"), "pockets": ("pockets", "word"), "mounting": ("mounting", "word"),
+    "hand": ("hand", "word"),
     "usable_depth": ("usable_depth_mm", "mm"), "speed_limit": ("speed_limit_rpm", "rpm"), "mass": ("mass_kg", "kg"),
     "land": ("land_mm", "mm"), "note": ("note", "text"),
     "cutting_speed": ("cutting_speed_m_min", "m/min"), "spindle_speed": ("spindle_speed_rpm", "rpm"),
@@ -160,7 +161,7 @@ class _Reader:
                 if name not in CASE_SECTIONS:
                     self._say(
                         (name,),
-                        f"unknown section.{did_you_mean(name, CASE_SECTIONS)} Beside a case stand: {', '.join(CASE_SECTIONS)}.",
+                        f"unknown section.{did_you_mean(name, CASE_SECTIONS)} Sections: {', '.join(CASE_SECTIONS)}.",
                     )
             return data["job"], ("job",)
         return data, ()
@@ -363,5 +364,6 @@ def _outside(definition: FactDefinition, entry: Given) -> str | None:
     for number in numbers:
         if isinstance(number, int | float) and not isinstance(number, bool) and not low <= number <= high:
             unit = f" {definition.unit}" if definition.unit else ""
-            return f"{entry.text} is outside what is possible here, {low:g} to {high:g}{unit}. Check the number and its unit."
+            allowed = f"{low:g} to {high:g}{unit}"
+            return f"{entry.text} is outside what is possible here, {allowed}. Check the number and its unit."
     return None

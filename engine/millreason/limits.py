@@ -1,4 +1,4 @@
-"""Which limits bind where nothing is possible: those that refuse, reject every candidate, or exclude what was needed."""
+"""Which limits bind where nothing is possible: those that refuse, reject all, or exclude what was needed."""
 
 from __future__ import annotations
 

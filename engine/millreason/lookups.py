@@ -23,7 +23,8 @@ from millreason.vocabulary import Vocabulary
 
 # Which fluid of a plan each supply of a machine gives; a cut can always be dry.
 _SUPPLIES = {
-    "air": "air_blast", "flood": "flood", "flood_water_mixed": "flood", "mg_rated_fluid": "flood", "through_tool": "through_tool",
+    "air": "air_blast", "flood": "flood", "flood_water_mixed": "flood", "mg_rated_fluid": "flood",
+    "through_tool": "through_tool",
     "mql": "mql", "mineral_oil": "mineral_oil", "brush_oil": "brush_oil",
 }  # fmt: skip
 

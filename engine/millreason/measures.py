@@ -24,19 +24,19 @@ MM3_PER_M3 = 1e9
 MM_PER_UM = 1e-3
 # Facts that only body and size decide, and those that pitch, rake and edge decide too: what a rejection by them
 # rules out with it. Everything else may differ from one candidate to the next.
-BODY_FACTS = frozenset(
-    {
-        "plan.outermost_diameter_mm", "plan.changer_full_use", "plan.changer_empty_use", "plan.mass_kg", "plan.mass_use",
-        "plan.moment_nm", "plan.moment_use", "plan.passes_across", "plan.width_to_diameter", "plan.uncovered",
-        "pick.cutter_class", "pick.kappa_deg", "pick.diameter_mm", "pick.mounting", "plan.width_of_cut_mm",
-        "plan.usual_diameter_use", "plan.pocket_use", "plan.pocket_corner_use", "plan.overhang_to_diameter",
-    }
-)  # fmt: skip
+BODY_FACTS = frozenset({
+    "plan.outermost_diameter_mm", "plan.changer_full_use", "plan.changer_empty_use", "plan.mass_kg",
+    "plan.mass_use", "plan.moment_nm", "plan.moment_use", "plan.passes_across", "plan.width_to_diameter",
+    "plan.uncovered", "pick.cutter_class", "pick.kappa_deg", "pick.diameter_mm", "pick.mounting",
+    "plan.width_of_cut_mm", "plan.usual_diameter_use", "plan.pocket_use", "plan.pocket_corner_use",
+    "plan.overhang_to_diameter",
+})  # fmt: skip
 CORNER_FACTS = frozenset({"plan.corner_use", "pick.corner", "pick.corner_radius_mm"})
 CUT_FACTS = BODY_FACTS | {
-    "plan.power_use", "plan.power_use_worn", "plan.net_power_kw", "plan.available_power_kw", "plan.gullet_use", "plan.teeth_in_cut",
-    "plan.cutting_speed_m_min", "plan.spindle_speed_rpm", "plan.speed_to_start", "plan.body_speed_use", "plan.lift_to_clamp",
-    "plan.layers_for_power", "plan.feed_cut_for_power", "plan.torque_nm", "plan.stable_depth_use", "pick.pitch", "pick.teeth", "pick.rake", "pick.edge",
+    "plan.power_use", "plan.power_use_worn", "plan.net_power_kw", "plan.available_power_kw", "plan.gullet_use",
+    "plan.teeth_in_cut", "plan.cutting_speed_m_min", "plan.spindle_speed_rpm", "plan.speed_to_start",
+    "plan.body_speed_use", "plan.lift_to_clamp", "plan.layers_for_power", "plan.feed_cut_for_power",
+    "plan.torque_nm", "plan.stable_depth_use", "pick.pitch", "pick.teeth", "pick.rake", "pick.edge",
 }  # fmt: skip
 
 
@@ -210,7 +210,8 @@ class Meter:
             "exit angle from the centre line", "deg", exit_angle_from_centreline, arc.exit_deg
         )
         contact = plan.sheet.use(
-            "plan.first_contact", "", first_contact, load.depth_mm, load.feed_per_tooth_mm, max(load.kappa_mean_deg, 1.0),
+            "plan.first_contact", "", first_contact, load.depth_mm, load.feed_per_tooth_mm,
+            max(load.kappa_mean_deg, 1.0),
             arc.entry_deg, candidate.rake.radial_deg, candidate.rake.axial_deg,
         )  # fmt: skip
         return {
@@ -242,7 +243,7 @@ class Meter:
     def _gullet(self, plan: Plan, load: Load) -> float | None:
         candidate = plan.candidate
         area = self._cutters.gullet.area_mm2(candidate.size.nominal_mm, candidate.teeth)
-        room = area * candidate.family.usable_depth_mm * self._number("gullet_share")
+        room = area * candidate.family.edge_length_mm * self._number("gullet_share")
         ratio = self._practice["chip_ratio"].by[self._fact("material.chip_form", "long")]
         if room <= 0:
             return None

@@ -106,7 +106,7 @@ class _Openings:
         return open_at
 
     def _pairs(self, facts: list[str]) -> Iterator[Opening]:
-        """Yield pairs where no change alone is enough: one fact freed as far as it goes, the other as little as needed."""
+        """Yield pairs where no change alone is enough: one fact freed far, the other changed as little as needed."""
         for first, second in combinations(facts, 2):
             freed = self._freed(first)
             if freed is None:
@@ -152,7 +152,8 @@ def _text(adviser: Adviser, out: Outcome, changes: dict[str, Any]) -> str:
         before = out.situation.value(fact)
         now = _shown(value, definition.unit, out.job.units)
         parts.append(
-            f"{definition.means[0].lower()}{definition.means[1:]}: {now} instead of {_shown(before, definition.unit, out.job.units)}"
+            f"{definition.means[0].lower()}{definition.means[1:]}: {now} instead of "
+            f"{_shown(before, definition.unit, out.job.units)}"
         )
     return "; and ".join(parts)
 

@@ -71,7 +71,8 @@ def _candidate(cutter: OwnCutter, cutters: CuttersFile, ledgers: Ledgers, offere
     blocked: list[Evidence] = [entry for pick, option in options for entry in ledgers.ruled_out(pick, option)]
     return Candidate(
         family, size, pitch, teeth, rake, edge, corner, wiper, wiper_land if wiper != "none" else 0.0,
-        str(known.get("pockets", "fixed")), str(mounting), sum(ledgers.balance(*entry) for entry in options), cutter, tuple(blocked),
+        str(known.get("pockets", "fixed")), str(mounting), sum(ledgers.balance(*entry) for entry in options),
+        cutter, tuple(blocked),
     )  # fmt: skip
 
 

@@ -11,14 +11,19 @@ from millreason.formulas.economics import cost_per_part, edges_per_batch
 from millreason.formulas.life import life_band
 from millreason.formulas.travel import pass_time
 from millreason.formulas.unit_power import Band, feed_factor, unit_power_check
+from millreason.plan import start_speed
 from millreason.practice import PracticeValue
 from millreason.trace import PlanRecord, Step
+from millreason.units import show
 
 if TYPE_CHECKING:
     from millreason.choice import Adviser
     from millreason.outcome import Outcome, Tried
 
 MINUTES_PER_HOUR = 60.0
+TRAVEL_CONVENTION = (
+    "each pass travels length + cutter diameter + clearance at both ends, so the whole cutter clears the work"
+)
 
 
 def make_plan_record(adviser: Adviser, out: Outcome, chosen: Tried) -> PlanRecord:
@@ -39,7 +44,7 @@ def make_plan_record(adviser: Adviser, out: Outcome, chosen: Tried) -> PlanRecor
     pocket = fact("work.feature") == "closed_pocket"
     return PlanRecord(
         direction=out.separate["direction"],
-        position=_position(chosen),
+        position=_position(chosen, out.job.units),
         centre_offset_mm=layout.offset_mm,
         entry=str(chosen.facts.get("plan.entry", "from_outside")),
         entry_gap_mm=layout.entry_gap_mm,
@@ -55,7 +60,7 @@ def make_plan_record(adviser: Adviser, out: Outcome, chosen: Tried) -> PlanRecor
         depth_of_cut_mm=max(load.depth_mm for load in plan.loads),
         fluid=out.separate["fluid"],
         steps=steps,
-        travel_convention="each pass travels length + cutter diameter + clearance at both ends, so the whole cutter clears the work",
+        travel_convention=TRAVEL_CONVENTION,
         feed_time_min=cut_time,
         time_min=time,
         time_low_min=time * practice["time_low_factor"].number,
@@ -64,7 +69,7 @@ def make_plan_record(adviser: Adviser, out: Outcome, chosen: Tried) -> PlanRecor
         ra_bounds_um=[ra[1], ra[2]],
         mass_kg=float(chosen.facts["plan.mass_kg"]),
         gauge_length_mm=meter.gauge_length(chosen.candidate),
-        entry_feed=_entry_feed(chosen, practice, pocket),
+        entry_feed=_entry_feed(chosen, practice, pocket, out.job.units),
         tool_life_min=life.likely,
         parts_per_edge_set=life.likely / cut_time,
         edge_sets_for_batch=math.ceil(
@@ -118,17 +123,19 @@ def _unit_power(load: Load, out: Outcome, practice: Mapping[str, PracticeValue])
     return unit_power_check(load.removal_cm3_min, constant, factor, 1.0)
 
 
-def _position(chosen: Tried) -> str:
+def _position(chosen: Tried, system: str) -> str:
     layout = chosen.plan.layout
     side = "the side where the teeth leave" if chosen.plan.direction == "climb" else "the side where the teeth enter"
     if not layout.one_pass:
-        return f"passes step across the work; each reaches {layout.width_mm:.0f} mm into it and the teeth leave at zero chip towards what is left"
+        reach = show(layout.width_mm, "mm", system)
+        return f"passes step across the work; each reaches {reach} into it, and the teeth leave with a thin chip"
     if layout.offset_mm <= 0:
         return "cutter centred on the work; there is no room to offset it"
-    return f"cutter centre {layout.offset_mm:.1f} mm off the middle of the work, so that it stands out more on {side}"
+    offset = show(layout.offset_mm, "mm", system)
+    return f"cutter centre {offset} off the middle of the work, so that it stands out more on {side}"
 
 
-def _entry_feed(chosen: Tried, practice: Mapping[str, PracticeValue], pocket: bool) -> str:
+def _entry_feed(chosen: Tried, practice: Mapping[str, PracticeValue], pocket: bool, system: str) -> str:
     if pocket:
         angle = chosen.facts.get("plan.ramp_deg")
         share = practice["feed_in_ramp"].number
@@ -136,15 +143,14 @@ def _entry_feed(chosen: Tried, practice: Mapping[str, PracticeValue], pocket: bo
         return f"ramp or helix {limit}, at {share * 100:.0f}% of the feed"
     radius = practice["roll_in_radius_to_diameter"].number * chosen.candidate.diameter_mm
     share = practice["feed_at_entry"].number
-    return (
-        f"roll in on an arc of about {radius:.0f} mm, or enter straight at {share * 100:.0f}% of the feed until engaged"
-    )
+    arc = show(round(radius), "mm", system)
+    return f"roll in on an arc of about {arc}, or enter straight at {share * 100:.0f}% of the feed until engaged"
 
 
 def _life(out: Outcome, chosen: Tried, practice: Mapping[str, PracticeValue]) -> Band:
     """Return the life of the edges at the speed of the heaviest layer, from the life behind the start speeds."""
     basis, exponent = practice["tool_life_min"], practice["taylor_n"]
-    start = out.situation.value("material.speed_start_m_min")
+    start = start_speed(out.situation.value, chosen.candidate.edge)
     life = Band(basis.low or basis.number, basis.number, basis.high or basis.number)
     likely = exponent.of("coated_carbide")
     taylor = Band(exponent.low or likely, likely, exponent.high or likely)

@@ -179,7 +179,8 @@ class Quality:
             return None
         teeth = max(plan.candidate.teeth * plan.layout.arc.arc_deg / 360, 1.0)
         limit = plan.sheet.use(
-            "stable depth", "mm", stable_depth, stiffness / MM_PER_UM, damping, load.specific_force_n_mm2, self._number("direction_factor"), teeth, load.kappa_mean_deg
+            "stable depth", "mm", stable_depth, stiffness / MM_PER_UM, damping, load.specific_force_n_mm2,
+            self._number("direction_factor"), teeth, load.kappa_mean_deg
         )  # fmt: skip
         return load.depth_mm / limit.depth_mm
 

@@ -80,7 +80,8 @@ class RuleChecker:
                 yield f"{value} lies outside the range of the fact, {definition.range[0]:g} to {definition.range[1]:g}."
         elif definition.kind in ("choice", "choices"):
             if value not in definition.options:
-                yield f"{value!r} is no option.{did_you_mean(str(value), map(str, definition.options))} Options: {', '.join(map(str, definition.options))}."
+                options = list(map(str, definition.options))
+                yield f"{value!r} is no option.{did_you_mean(str(value), options)} Options: {', '.join(options)}."
         elif definition.kind == "flag" and not isinstance(value, bool):
             yield f"{value!r} is neither true nor false."
 
@@ -108,10 +109,12 @@ class RuleChecker:
             if self._picks[pick].options:
                 for option in options if isinstance(options, list) else [options]:
                     if option not in self._picks[pick].options:
-                        yield f"{pick}: {option!r} is no option. Options: {', '.join(map(str, self._picks[pick].options))}."
+                        known = ", ".join(map(str, self._picks[pick].options))
+                        yield f"{pick}: {option!r} is no option. Options: {known}."
         strength = then.strength or then.lower
         if strength and self._strengths is not None and strength not in self._strengths:
-            yield f"unknown strength {strength!r}. Strengths are in knowledge/strengths.yaml: {', '.join(sorted(self._strengths))}."
+            known = ", ".join(sorted(self._strengths))
+            yield f"unknown strength {strength!r}. Strengths are in knowledge/strengths.yaml: {known}."
         yield from self._limit(then.reject or then.refuse or then.limit)
 
     def _limit(self, spec: RejectSpec | None) -> Iterable[str]:

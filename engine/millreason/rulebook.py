@@ -19,7 +19,8 @@ from millreason.yaml_source import read_model, read_yaml
 Stage = Literal["assume", "appraise", "weigh", "judge", "caution"]
 STAGES: tuple[Stage, ...] = ("assume", "appraise", "weigh", "judge", "caution")
 Scalar = str | float | bool
-PLACEHOLDER = re.compile(r"\{([a-z_]+\.[a-z_0-9.]+)\}")
+# {fact.name} prints the value with its unit, {fact.name%} a ratio as a percentage.
+PLACEHOLDER = re.compile(r"\{([a-z_]+\.[a-z_0-9.]+)%?\}")
 
 
 class _Strict(BaseModel):

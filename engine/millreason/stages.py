@@ -72,9 +72,8 @@ class Stage:
         """Return the record of a limit that a rule names."""
         against = situation.value(spec.against) if isinstance(spec.against, str) else spec.against
         value = plain_value(situation.value(spec.value))
-        return LimitRecord(
-            spec.limit, self.why(rule, situation, system), value, plain_value(against), rule, list(spec.relax)
-        )
+        why, unit = self.why(rule, situation, system), self._vocabulary.facts[spec.value].unit
+        return LimitRecord(spec.limit, why, value, plain_value(against), rule, list(spec.relax), unit=unit)
 
     def _condition(self, rule: Rule, fact: Fact, test: str, situation: Situation) -> ConditionRecord:
         record = situation.record(fact.attribute)
@@ -101,7 +100,11 @@ def fill(text: str, situation: Situation, vocabulary: Vocabulary, system: str) -
         name = match.group(1)
         value = situation.value(name)
         definition = vocabulary.facts[name]
-        return "an unknown value" if value is None else shown(value, definition.unit, system)
+        if value is None:
+            return "an unknown value"
+        if match.group(0).endswith("%}"):
+            return shown(value * 100, "percent", system)
+        return shown(value, definition.unit, system)
 
     return PLACEHOLDER.sub(value_of, text)
 

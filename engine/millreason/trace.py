@@ -5,7 +5,10 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 from functools import cache
-from typing import Any, Literal
+from typing import TYPE_CHECKING, Any, Literal
+
+if TYPE_CHECKING:
+    from millreason.explanation_records import Explanation
 
 Origin = Literal["given", "looked_up", "computed", "assumed", "concluded"]
 Verdict = Literal["recommend", "recommend_with_warnings", "conditional", "ask", "refuse"]
@@ -248,6 +251,7 @@ class LimitRecord:
     rule: str
     relax: list[str]
     candidates: int = 1
+    unit: str = ""
 
 
 @dataclass(frozen=True)
@@ -284,6 +288,18 @@ class CandidateRecord:
 
 
 @dataclass(frozen=True)
+class SourceRecord:
+    """A published work that the answer rests on."""
+
+    id: str
+    kind: str
+    author: str
+    title: str
+    edition: str
+    year: int | None
+
+
+@dataclass(frozen=True)
 class Trace:
     """Everything that happened on the way to the answer."""
 
@@ -293,6 +309,7 @@ class Trace:
     candidates: list[CandidateRecord]
     calculations: list[Calculation]
     candidates_possible: int
+    sources: list[SourceRecord] = field(default_factory=list)
 
 
 @dataclass(frozen=True)
@@ -322,6 +339,7 @@ class Answer:
     knowledge_hash: str
     provenance: dict[str, int] = field(default_factory=dict)
     existing: CandidateRecord | None = None
+    explanation: Explanation | None = None
 
     @property
     def exit_code(self) -> int:
@@ -342,6 +360,9 @@ class Answer:
 @cache
 def _adapter() -> Any:
     from pydantic import TypeAdapter
+
+    # The name must be at hand where the fields of Answer are resolved.
+    from millreason.explanation_records import Explanation  # noqa: F401
 
     return TypeAdapter(Answer)
 

@@ -202,7 +202,7 @@ _CUBIC_INCH_IN_CM3 = 16.387064
 
 
 def plain(value: float, decimals: int = 3) -> str:
-    """Return a number rounded for a reader: at most so many decimals, four figures from one upwards, no needless zeros."""
+    """Return a number rounded for a reader: so many decimals, four figures from one upwards, no needless zeros."""
     if abs(value) >= 1:
         decimals = min(decimals, max(0, 3 - int(math.log10(abs(value)))))
     text = f"{value:.{decimals}f}"

@@ -178,8 +178,8 @@ def _rejected_rows(candidate: CandidateRecord, units: str) -> list[tuple[str, ..
         (
             *(first if place == 0 else ("", "")),
             clean(limit.text) or option(limit.key),
-            limit_number(limit.value, units),
-            limit_number(limit.limit, units),
+            limit_number(limit.value, units, limit.unit),
+            limit_number(limit.limit, units, limit.unit),
             clean(limit.rule),
         )
         for place, limit in enumerate(candidate.limits)

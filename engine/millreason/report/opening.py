@@ -78,8 +78,8 @@ def _limit_rows(limits: Sequence[LimitRecord], units: str) -> tuple[tuple[str, .
     return tuple(
         (
             clean(limit.text) or option(limit.key),
-            limit_number(limit.value, units),
-            limit_number(limit.limit, units),
+            limit_number(limit.value, units, limit.unit),
+            limit_number(limit.limit, units, limit.unit),
             clean(limit.rule),
             ", ".join(fact_words(name) for name in limit.relax),
         )

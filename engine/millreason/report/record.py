@@ -17,7 +17,7 @@ from millreason.report.words import (
     recommends,
     value_text,
 )
-from millreason.trace import Answer, BasisRecord, FactRecord, FiringRecord, Plain
+from millreason.trace import Answer, BasisRecord, FactRecord, FiringRecord, Plain, SourceRecord
 
 _STAGES = {
     "assume": "Filling gaps",
@@ -123,6 +123,14 @@ def _plain(value: Plain) -> str:
 
 
 # ---------------------------------------------------------------------- sources
+def _work(name: str, titles: Mapping[str, SourceRecord]) -> str:
+    source = titles.get(name)
+    if source is None:
+        return name
+    when = ", ".join(clean(str(part)) for part in (source.edition, source.year) if part)
+    return f"{clean(source.author)}, {clean(source.title)}{f' ({when})' if when else ''} [{name}]"
+
+
 def _sources(answer: Answer) -> Section | None:
     places: dict[str, set[str]] = defaultdict(set)
     for basis in _bases(answer):
@@ -132,7 +140,8 @@ def _sources(answer: Answer) -> Section | None:
     for use in answer.trace.calculations:
         for reference in use.references:
             places[clean(reference)].add(clean(use.formula))
-    rows = tuple((name, "; ".join(sorted(used))) for name, used in sorted(places.items()))
+    titles = {source.id: source for source in answer.trace.sources}
+    rows = tuple((_work(name, titles), "; ".join(sorted(used))) for name, used in sorted(places.items()))
     return section(
         "sources", "Sources", present(Table(("source", "where in it, or the formula it stands behind"), rows))
     )

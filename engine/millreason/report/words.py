@@ -252,9 +252,9 @@ def rake_text(picks: Picks) -> str:
     return f"{option(picks.rake)}: {angles}"
 
 
-def limit_number(value: Plain, system: str) -> str:
+def limit_number(value: Plain, system: str, unit: str = "") -> str:
     """Return a value or a limit; what is not known leaves its cell empty."""
-    return "" if value is None else value_text(value, "", system)
+    return "" if value is None else value_text(value, unit, system)
 
 
 def recommends(answer: Answer) -> bool:
