@@ -27,12 +27,14 @@ from millreason.formulas.motion import cutting_speed, removal_rate, spindle_spee
 from millreason.formulas.passes import passes_across
 from millreason.formulas.rakes import orthogonal_rake
 from millreason.formulas.round_insert import round_insert_angle
+from millreason.formulas.stiffness import stable_depth
 from millreason.formulas.tooth_forces import force_components, peak_torque
 from millreason.spindle import Spindle
 from millreason.worksheet import Worksheet
 
 Tuning = Mapping[str, float]
 _TINY = 1e-9
+UM_PER_MM = 1000
 
 
 class Planner:
@@ -249,6 +251,13 @@ class Planner:
         mark = len(plan.sheet.uses)
         load = self._load(plan, name, start_count, depth, chip)
         least_depth = max(2 * plan.hex_least_mm, self._number("finishing_depth_mm"))
+        steady = self._steady_depth(plan, load)
+        if depth > steady:
+            total = depth * start_count
+            start_count = max(start_count, min(math.ceil(total / steady - _TINY), int(total / least_depth)))
+            depth = total / start_count
+            del plan.sheet.uses[mark:]
+            load = self._load(plan, name, start_count, depth, chip)
         count = start_count
         while load.use_worn(wear) > allowed and depth * count / (count + 1) >= least_depth:
             grow = max(
@@ -269,6 +278,22 @@ class Planner:
             del plan.sheet.uses[mark:]
             loads = [self._finishing(plan, (count, depth), chip)]
         return replace(plan, loads=loads, layers_for_power=count - start_count, feed_left=chip / plan.hex_wanted_mm)
+
+    def _steady_depth(self, plan: Plan, load: Load) -> float:
+        """Return the deepest layer that the stiffness bears, where stiffness and damping are known."""
+        stiffness, damping = self._fact("machine.stiffness_n_um"), self._fact("machine.damping_ratio")
+        if stiffness is None or damping is None:
+            return math.inf
+        teeth = max(plan.candidate.teeth * plan.layout.arc.arc_deg / 360, 1.0)
+        limit = stable_depth(
+            stiffness * UM_PER_MM,
+            damping,
+            load.specific_force_n_mm2,
+            self._number("direction_factor"),
+            teeth,
+            load.kappa_mean_deg,
+        )
+        return limit.depth_mm * self._number("stable_depth_use_most")
 
     def _thinner_chip(self, plan: Plan, load: Load, share: float, chip: float) -> float:
         """Return the chip thickness at which the load fits; power goes with chip thickness to the power 1 - mc."""
