@@ -93,3 +93,22 @@ def test_nothing_breaks_a_hard_limit(name: str) -> None:
     from example_jobs import adviser
 
     assert breaches(write_answer(adviser(), decided(JOBS[name]), openings=False).to_dict()) == []
+
+
+@pytest.mark.parametrize(
+    ("material", "edge", "low", "high"),
+    [
+        # Kalpakjian and Schmid, general recommendations for milling (recalled): diamond in high-silicon aluminium.
+        ("AlSi17Cu4Mg", "diamond", 370, 910),
+        # Common practice: cubic boron nitride in hardened steel, and carbide beside it.
+        ("1.2379, hardness: 60 HRC", "cbn", 150, 250),
+        ("1.2379, hardness: 60 HRC", "negative_land", 35, 75),
+    ],
+)
+def test_each_cutting_material_runs_at_its_own_speed(material: str, edge: str, low: float, high: float) -> None:
+    shelf = "cutters: [{id: own, cutter_class: face_mill, diameter: 63 mm, teeth: 5, kappa: 45 deg, edge: %s}]\n"
+    job = PLATE.replace("C45, hardness: 190 HB", material).replace("stock: 3 mm", "stock: 0.15 mm") + shelf % edge
+    for plan in plans(job):
+        assert plan.candidate.edge == edge
+        for load in plan.loads:
+            assert low <= load.cutting_speed_m_min <= high

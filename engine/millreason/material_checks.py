@@ -102,10 +102,19 @@ def check_speeds(document: Document, speeds: SpeedFile, families: FamilyFile) ->
     for name, run in speeds.runs.items():
         for row_name in run.rows:
             yield from _unknown(document, ("runs", name), row_name, speeds.rows, "rows")
+    yield from _check_edges(document, speeds)
     for name, family in families.families.items():
         if family.speed not in speeds.runs:
             message = f"{family.speed!r} is missing; family {name} of families.yaml asks for it."
             yield document.finding(("runs",), message)
+
+
+def _check_edges(document: Document, speeds: SpeedFile) -> Iterator[Finding]:
+    for edge, entries in speeds.edges.items():
+        for run, entry in entries.items():
+            yield from _unknown(document, ("edges", edge), run, speeds.runs, "runs")
+            if len(entry.speed) != 3 or list(entry.speed) != sorted(entry.speed):
+                yield document.finding(("edges", edge, run), f"{list(entry.speed)} must be 3 rising figures.")
 
 
 def check_words(document: Document, words: WordFile, materials: Mapping[str, object]) -> Iterator[Finding]:

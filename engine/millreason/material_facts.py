@@ -112,6 +112,10 @@ def _speed_facts(book: MaterialBook, state: State, hb: float | None) -> Iterator
     for place, part in enumerate(("min", "start", "max")):
         yield MaterialFact(f"material.speed_{part}_m_min", round(pick.speed[place]), pick.basis)
         yield MaterialFact(f"material.fz45_{part}_mm", round(pick.fz45[place], 3), pick.basis)
+    for edge, runs in book.speeds.edges.items():
+        if own := runs.get(state.speed):
+            for part, value in zip(("min", "start", "max"), own.speed, strict=True):
+                yield MaterialFact(f"material.{edge}_speed_{part}_m_min", value, book.speeds.bases[own.basis])
 
 
 def speed_pick(book: MaterialBook, state: State, hb: float | None = None) -> SpeedPick:

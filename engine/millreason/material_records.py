@@ -76,10 +76,18 @@ class Factor(Record):
     basis: str
 
 
+class EdgeSpeed(Record):
+    """Least, start and most speed of one cutting material along a run."""
+
+    speed: Many[float]
+    basis: str
+
+
 class SpeedFile(KnowledgeFile):
     """Content of knowledge/speeds.yaml."""
 
     uncoated: dict[Group, Factor]
+    edges: dict[Literal["diamond", "cbn"], dict[str, EdgeSpeed]]
     rows: dict[str, SpeedRow]
     runs: dict[str, SpeedRun]
 

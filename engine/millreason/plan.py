@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import replace
 from typing import Any
 
@@ -37,6 +37,12 @@ _TINY = 1e-9
 UM_PER_MM = 1000
 
 
+def start_speed(fact: Callable[..., Any], edge: str, part: str = "start", default: float | None = None) -> Any:
+    """Return the start (or min, max) speed [m/min] for an edge; diamond and boron nitride have their own."""
+    own = fact(f"material.{edge}_speed_{part}_m_min")
+    return fact(f"material.speed_{part}_m_min", default) if own is None else own
+
+
 class Planner:
     """Makes plans for the candidates of one job."""
 
@@ -58,7 +64,7 @@ class Planner:
             candidate.rake.axial_deg,
             self._kappa(candidate, candidate.family.usable_depth_mm)[1],
         )
-        wanted = self._speed_wanted()
+        wanted = self._speed_wanted(candidate.edge)
         hex_wanted, hex_least = self._chip_wanted(candidate)
         rough, finish = self._depths(candidate)
         draft = Plan(candidate, layout, [], direction, wanted, hex_wanted, hex_least, 0, 1.0, rake, sheet)
@@ -130,13 +136,11 @@ class Planner:
         return (count, rough / count), ((1, finish) if finish else (0, 0.0))
 
     # ------------------------------------------------------------------ speed and feed
-    def _speed_wanted(self) -> float:
-        start = self._fact("material.speed_start_m_min") * self._tuning.get("cutting_speed", 1.0)
-        low, high = (
-            self._fact("material.speed_min_m_min", 0.0),
-            self._fact("material.speed_max_m_min", math.inf),
-        )
-        kept = min(max(start, low), high) if self._tuning.get("cutting_speed", 1.0) >= 1.0 else min(start, high)
+    def _speed_wanted(self, edge: str) -> float:
+        factor = self._tuning.get("cutting_speed", 1.0)
+        start = start_speed(self._fact, edge) * factor
+        low, high = start_speed(self._fact, edge, "min", 0.0), start_speed(self._fact, edge, "max", math.inf)
+        kept = min(max(start, low), high) if factor >= 1.0 else min(start, high)
         return float(min(kept, self._tuning.get("cutting_speed_most_m_min", math.inf)))
 
     def _chip_wanted(self, candidate: Candidate) -> tuple[float, float]:
