@@ -19,6 +19,7 @@ class Because:
     kind: Kind
     name: str = ""
     origin: str = ""
+    how: str = ""
     basis: BasisRecord | None = None
     because: list[Because] = field(default_factory=list)
 
@@ -34,6 +35,8 @@ class Result:
     passes_across: float | None = None
     layers: float | None = None
     time_min: float | None = None
+    standing: float = 0.0
+    contradictions: int = 0
 
     @property
     def stands(self) -> bool:
@@ -53,7 +56,7 @@ class Change:
 
 @dataclass(frozen=True)
 class Side:
-    """One option in a comparison: its ledger, the evidence of the best whole tool with it, and what judging took off."""
+    """One option in a comparison: its ledger, the best whole tool with it, and what judging took off that."""
 
     option: str
     balance: float

@@ -1,44 +1,67 @@
-"""A quick adviser for re-runs: the same rules and search, with firings remembered and no texts written.
+"""A quick adviser for re-runs: the same rules, search and formulas, with results remembered and no texts written.
 
 A rule looks at a fact only through its tests, so two situations that meet the same tests fire the same rules.
-The firings of a stage are kept under what the tests can tell apart: between two thresholds a number is as good as another.
+The firings of a stage are kept under what the tests can tell apart: between two thresholds all numbers are one.
+A plan is kept with the facts it has read; it serves again wherever these are the same.
 """
 
 from __future__ import annotations
 
 from bisect import bisect_left
+from collections import defaultdict
 from collections.abc import Hashable, Iterable, Iterator, Mapping
 from functools import cached_property
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 from millreason.choice import Adviser
 from millreason.facts import Situation, basis_record
 from millreason.inference import Firing
 from millreason.materials import Materials
-from millreason.rulebook import RejectSpec, Rule, RuleBook, tested_values
+from millreason.measures import Meter
+from millreason.plan import Planner
+from millreason.rulebook import RejectSpec, Rule, tested_values
+from millreason.search import Search, identity_of
 from millreason.stages import Stage, conclusion_text
 from millreason.trace import FiringRecord, LimitRecord
-from millreason.vocabulary import Vocabulary
+
+if TYPE_CHECKING:
+    from millreason.candidates import Candidate
+    from millreason.cut_plan import Plan
+    from millreason.outcome import Outcome
+    from millreason.spindle import Spindle
 
 _MOST_REMEMBERED = 20_000
+_MOST_PLANS = 3_000
+_Plans = defaultdict[tuple[Hashable, ...], "list[tuple[dict[str, Any], Plan, dict[str, Any]]]"]
 
 
 class QuickAdviser(Adviser):
-    """Decides like the adviser it is made from, on the plain engine, and only as far as the best candidate."""
+    """Decides like the adviser it is made from, only as far as the best candidate, and without texts.
+
+    It runs the rules on the plain engine and remembers firings; a `sure` one runs them anew on the adviser's own.
+    """
 
     runners_up = 0
 
-    def __init__(self, adviser: Adviser) -> None:
-        super().__init__(adviser.knowledge, adviser.materials, adviser.vocabulary, adviser.rulebook, "twin")
+    def __init__(self, adviser: Adviser, sure: QuickAdviser | None = None) -> None:
+        engine = adviser.engine if sure is not None else "twin"
+        super().__init__(adviser.knowledge, adviser.materials, adviser.vocabulary, adviser.rulebook, engine)
         self.materials = _RememberedMaterials(adviser.materials)  # type: ignore[assignment]
+        self._plans: _Plans = sure._plans if sure is not None else defaultdict(list)
+        self._compiled = adviser.stages if sure is not None else None
+
+    def search(self, out: Outcome, spindle: Spindle) -> Search:
+        """Return a search that shares its plans with all searches before it."""
+        if sum(map(len, self._plans.values())) > _MOST_PLANS:
+            self._plans.clear()
+        return _QuickSearch(self, out, spindle, self._plans)
 
     @cached_property
     def stages(self) -> Mapping[str, Stage]:
-        """The compiled stages, each remembering what it fired."""
-        book, vocabulary = self.rulebook, self.vocabulary
-        names = ("assume", "appraise", "weigh", "judge", "caution")
-        stages: dict[str, Stage] = {name: _QuickStage(book.stage(name), book, vocabulary) for name in names}  # type: ignore[arg-type]
-        return {**stages, "size": _QuickStage(book.stage("weigh", about_size=True), book, vocabulary)}
+        """The compiled stages, telling no more than which rules fired."""
+        if self._compiled is not None:
+            return {name: _QuietStage(stage) for name, stage in self._compiled.items()}
+        return {name: _RememberingStage(stage) for name, stage in super().stages.items()}
 
 
 class _RememberedMaterials:
@@ -52,6 +75,46 @@ class _RememberedMaterials:
         if said not in self._found:
             self._found[said] = self._materials.look_up(*said)
         return self._found[said]
+
+
+class _Reading:
+    """A situation that remembers which facts were read from it."""
+
+    def __init__(self, situation: Situation) -> None:
+        self._value = situation.value
+        self.read: dict[str, Any] = {}
+
+    def value(self, name: str, default: Any = None) -> Any:
+        """Return the value of a fact, or the default where it is not known."""
+        found = self.read[name] = self._value(name)
+        return default if found is None else found
+
+
+class _QuickSearch(Search):
+    """A search that plans a candidate only where a fact has changed that its plan reads."""
+
+    def __init__(self, adviser: Adviser, out: Outcome, spindle: Spindle, plans: _Plans) -> None:
+        super().__init__(adviser, out, spindle)
+        knowledge = adviser.knowledge
+        self._reading = _Reading(out.situation)
+        situation: Any = self._reading
+        self._meter = Meter(situation, knowledge.practice, knowledge.cutters, self._interface, spindle)
+        self._planner = Planner(situation, out.tuning.values, knowledge.practice, spindle)
+        self._plans = plans
+        fixed = out.situation.value("machine.interface"), spindle, out.separate["direction"]
+        self._key = *fixed, tuple(sorted(out.tuning.values.items()))
+
+    def _measured(self, candidate: Candidate) -> tuple[Plan, dict[str, Any]]:
+        known = self._plans[*self._key, *identity_of(candidate)]
+        value = self._out.situation.value
+        for read, plan, measured in known:
+            if all(value(name) == before for name, before in read.items()):
+                return plan, measured
+        self._reading.read = {}
+        plan, measured = super()._measured(candidate)
+        plan.sheet.uses.clear()
+        known.append((self._reading.read, plan, measured))
+        return plan, measured
 
 
 class _Telling:
@@ -68,24 +131,12 @@ class _Telling:
         return place, place < len(self.numbers) and self.numbers[place] == value
 
 
-class _QuickStage(Stage):
-    """A stage that remembers its firings and writes records without texts."""
+class _QuietStage(Stage):
+    """A compiled stage that writes records without texts."""
 
-    def __init__(self, rules: Iterable[Rule], book: RuleBook, vocabulary: Vocabulary) -> None:
-        super().__init__(rules, book, vocabulary, "twin")
-        self._tellings = dict(_tellings(self.rules.values()))
-        self._firings: dict[Hashable, list[Firing]] = {}
+    def __init__(self, stage: Stage) -> None:
+        self.__dict__.update(stage.__dict__)
         self._records: dict[str, FiringRecord] = {}
-
-    def run(self, situation: Situation) -> list[Firing]:
-        """Return the firings for a situation; those for one that meets the same tests are remembered."""
-        key = tuple([telling.of(situation.value(name)) for name, telling in self._tellings.items()])
-        found = self._firings.get(key)
-        if found is None:
-            if len(self._firings) >= _MOST_REMEMBERED:
-                self._firings.clear()
-            found = self._firings[key] = super().run(situation)
-        return found
 
     def record(self, firing: Firing, situation: Situation, system: str, about: str = "") -> FiringRecord:
         """Return the record of a rule without its texts."""
@@ -104,6 +155,25 @@ class _QuickStage(Stage):
     def limit(self, rule: str, spec: RejectSpec, situation: Situation, system: str) -> LimitRecord:
         """Return a limit with its key alone."""
         return LimitRecord(spec.limit, "", None, None, rule, [])
+
+
+class _RememberingStage(_QuietStage):
+    """A stage that fires once for all situations which its tests cannot tell apart."""
+
+    def __init__(self, stage: Stage) -> None:
+        super().__init__(stage)
+        self._tellings = dict(_tellings(self.rules.values()))
+        self._firings: dict[Hashable, list[Firing]] = {}
+
+    def run(self, situation: Situation) -> list[Firing]:
+        """Return the firings for a situation; those for one that meets the same tests are remembered."""
+        key = tuple([telling.of(situation.value(name)) for name, telling in self._tellings.items()])
+        found = self._firings.get(key)
+        if found is None:
+            if len(self._firings) >= _MOST_REMEMBERED:
+                self._firings.clear()
+            found = self._firings[key] = super().run(situation)
+        return found
 
 
 def _tellings(rules: Iterable[Rule]) -> Iterator[tuple[str, _Telling]]:
