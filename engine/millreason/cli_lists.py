@@ -125,13 +125,24 @@ def materials_list(group: Any, shop: Path | None) -> None:
 @SHOP
 @guarded
 def materials_find(text: str, shop: Path | None) -> None:
-    """Find materials by any part of a name: 1.2379, 4140, brass."""
+    """Find the material a text means, as a job would: '304 stainless plate', 1.2379, brass."""
+    from millreason.material_search import Ambiguous, Found, find_material
+
     known = load(shop).materials
-    found = known.search(text)
-    if not found:
-        raise MillreasonError(f"no material is known by {text!r}. See 'millreason materials list'.")
-    for material in found:
+    result = find_material(known.book, text)
+    if isinstance(result, Found):
+        say(_material_line(known, result.material))
+        say(f"  state {result.state.id.replace('_', ' ')}, {result.state.hb_min:g} to {result.state.hb_max:g} HB")
+        for doubt in result.doubts:
+            say(f"  {doubt}")
+        return
+    say(f"{result.why} {result.question}" if isinstance(result, Ambiguous) else result.why)
+    near = result.candidates if isinstance(result, Ambiguous) else known.search(text)
+    for material in near:
         say(_material_line(known, material))
+    if not near and not isinstance(result, Ambiguous):
+        names = f" Near names: {', '.join(result.near)}." if result.near else ""
+        raise MillreasonError(f"no material is known by {text!r}.{names} See 'millreason materials list'.")
 
 
 def _material_line(known: Materials, material: Material) -> str:
