@@ -86,6 +86,7 @@ def test_the_units_follow_what_most_values_are_written_in() -> None:
     assert read("work: {width: 3 in, length: 5 in, stock: 2 mm}").units == "inch"
     assert read("work: {width: 3 in, stock: 2 mm, length: 50 mm}").units == "metric"
     assert read("work: {width: 3 in, stock: 2 mm}").units == "metric"
+    assert read("work: {width: 3 in}\nmachine: {speed_steps: [80 rpm, 660 rpm, 2720 rpm]}").units == "inch"
 
 
 def test_everything_wrong_is_found_at_once_and_in_its_line() -> None:

@@ -8,7 +8,7 @@ from pathlib import Path
 from typing import Any
 
 from millreason.errors import DataError, Finding, did_you_mean
-from millreason.units import INCH_UNITS, QuantityError, convert, parse_quantity
+from millreason.units import INCH_UNITS, SHARED_UNITS, QuantityError, convert, parse_quantity
 from millreason.vocabulary import FactDefinition, Vocabulary
 from millreason.yaml_source import Document, Key, parse_yaml, read_yaml
 
@@ -241,7 +241,7 @@ class _Reader:
         quantity = parse_quantity(raw, unit)
         if quantity.unit in INCH_UNITS:
             self.inch += 1
-        else:
+        elif quantity.unit not in SHARED_UNITS:
             self.metric += 1
         return Given(convert(quantity.value, quantity.unit, unit), str(raw), unit, line)
 

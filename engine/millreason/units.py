@@ -104,6 +104,10 @@ INCH_UNITS = frozenset(
 )
 
 
+# Units that readers in inches and in millimetres write alike.
+SHARED_UNITS = frozenset({"rpm", "rev/min", "deg", "min", "s", "h", "/h", "%"})
+
+
 class QuantityError(MillreasonError):
     """A text is not a quantity in a unit that is allowed here; the message says what is."""
 
