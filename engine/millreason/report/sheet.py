@@ -58,7 +58,7 @@ def setup_sheet(answer: Answer, picks: Picks, plan: PlanRecord) -> Section:
         Items(tuple(Item(text) for text in _stop_signs(plan)), title="Stop and look when"),
     )
     cautions = tuple(_short_caution(caution) for caution in by_severity(answer.cautions) if caution.severity != "note")
-    notes = [caution.key.replace("_", " ") for caution in answer.cautions if caution.severity == "note"]
+    notes = [option(caution.key) for caution in answer.cautions if caution.severity == "note"]
     blocks = present(
         Fields(_tool(answer, picks, plan), "Tool"),
         Fields(_use(answer, picks, plan), "Position and passes"),

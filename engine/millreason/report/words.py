@@ -19,6 +19,16 @@ _OPTIONS = {
     "screw_in_modular": "screw-in, modular",
     "straight_shank_collet": "straight shank in a collet",
     "mql": "minimum-quantity lubrication",
+    "atc_diameter_neighbours": "tool diameter in the changer",
+    "atc_mass": "tool mass in the changer",
+    "atc_moment": "tipping moment in the changer",
+    "bue": "built-up edge",
+    "runout_axial": "axial run-out",
+    "torque_low_rpm": "torque at low speed",
+    "min_chip_thickness": "least chip thickness",
+    "true_90_check": "check of the square angle",
+    "dust_cast_iron": "dust of cast iron",
+    "hydrogen_wet_mg": "hydrogen from wet magnesium",
 }
 _PICKS = {
     "cutter_class": "cutter class",
