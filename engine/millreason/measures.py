@@ -15,6 +15,7 @@ from millreason.formulas.chip import chip_volume_per_tooth_pass, gullet_fill
 from millreason.formulas.engagement import exit_angle_from_centreline
 from millreason.formulas.entry_paths import ramp_limit_angle
 from millreason.formulas.first_contact import first_contact
+from millreason.formulas.stiffness import tool_deflection
 from millreason.formulas.travel import full_overrun_travel, pass_time
 from millreason.machines import Interface
 from millreason.quality import Quality
@@ -146,8 +147,23 @@ class Meter:
             "body_speed_known": not math.isinf(candidate.speed_limit_rpm),
             "usual_diameter_use": _over(candidate.diameter_mm, self._fact("machine.largest_usual_diameter_mm")),
             "ramp_deg": self._ramp(plan),
+            "tool_deflection_mm": self._deflection(plan),
             "overhang_to_diameter": self.gauge_length(candidate) / candidate.diameter_mm,
         }
+
+    def _deflection(self, plan: Plan) -> float | None:
+        """Return how far the cutter gives way sideways: bending of the arbor and tilt in the interface, an estimate."""
+        diameter = self._interface.gauge.diameter_mm
+        stiffness = self._practice["interface_stiffness_nmm_rad"].by[self._interface.size]
+        modulus = self._practice["youngs_modulus_n_mm2"].by["P"]
+        load = max(plan.loads, key=lambda entry: entry.radial_n)
+        if load.radial_n <= 0:
+            return None
+        length = self.gauge_length(plan.candidate)
+        found = plan.sheet.use(
+            "tool deflection", "mm", tool_deflection, load.radial_n, length, diameter, modulus, stiffness
+        )
+        return found.total_mm
 
     def _ramp(self, plan: Plan) -> float | None:
         ramp, diameter = plan.candidate.family.ramp, plan.candidate.diameter_mm

@@ -8,6 +8,7 @@ from typing import TYPE_CHECKING
 
 from millreason.cut_plan import Load, plan_teeth
 from millreason.formulas.economics import cost_per_part, edges_per_batch
+from millreason.formulas.entry_paths import helix_path
 from millreason.formulas.life import life_band
 from millreason.formulas.travel import pass_time
 from millreason.formulas.unit_power import Band, feed_factor, unit_power_check
@@ -138,6 +139,8 @@ def _position(chosen: Tried, system: str) -> str:
 def _entry_feed(chosen: Tried, practice: Mapping[str, PracticeValue], pocket: bool, system: str) -> str:
     if pocket:
         angle = chosen.facts.get("plan.ramp_deg")
+        if chosen.facts.get("plan.entry") == "helix" and isinstance(angle, float):
+            return _helix(chosen, angle, practice, system)
         share = practice["feed_in_ramp"].number
         limit = f"at most {angle:.1f} degrees" if isinstance(angle, float) else "within the body's limit"
         return f"ramp or helix {limit}, at {share * 100:.0f}% of the feed"
@@ -145,6 +148,20 @@ def _entry_feed(chosen: Tried, practice: Mapping[str, PracticeValue], pocket: bo
     share = practice["feed_at_entry"].number
     arc = show(round(radius), "mm", system)
     return f"roll in on an arc of about {arc}, or enter straight at {share * 100:.0f}% of the feed until engaged"
+
+
+def _helix(chosen: Tried, angle: float, practice: Mapping[str, PracticeValue], system: str) -> str:
+    """Say how the cutter spirals in: path of its centre, pitch of a turn and feed."""
+    fact, outermost = chosen.situation.value, chosen.candidate.outermost_mm
+    hole = min(fact("work.width_mm"), fact("work.length_mm"), 2 * chosen.candidate.diameter_mm)
+    share, load = practice["feed_in_ramp"].number, chosen.plan.loads[0]
+    if hole <= outermost:
+        return f"ramp along the pocket at most {angle:.1f} degrees, at {share * 100:.0f}% of the feed"
+    feed = load.table_feed_mm_min * share
+    path = chosen.plan.sheet.use("helix", "mm", helix_path, hole, outermost, angle, load.depth_mm, feed)
+    across, pitch = show(path.diameter_mm, "mm", system), show(path.pitch_mm, "mm", system)
+    centre = show(path.centre_feed_mm_min, "mm/min", system)
+    return f"spiral in on a circle of {across} for the cutter centre, at most {pitch} deep a turn, centre feed {centre}"
 
 
 def _life(out: Outcome, chosen: Tried, practice: Mapping[str, PracticeValue]) -> Band:

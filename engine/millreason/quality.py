@@ -11,7 +11,7 @@ from millreason.formulas.holding import lift_force, vacuum_hold
 from millreason.formulas.rakes import inclination
 from millreason.formulas.stiffness import floor_deflection, stable_depth, wall_deflection
 from millreason.formulas.surface import land_against_feed, roughness_with_runout
-from millreason.formulas.tilt import tilt_dish
+from millreason.formulas.tilt import tilt_dish, trailing_lift
 
 MM_PER_UM = 1e-3
 
@@ -123,6 +123,11 @@ class Quality:
             "floor_spring_mm": floor,
             "wall_bend_mm": wall,
             "dish_mm": dish,
+            "trailing_lift_mm": plan.sheet.use(
+                "lift of the trailing edge", "mm", trailing_lift, tilt, plan.candidate.diameter_mm
+            )
+            if tilt
+            else None,
             "flatness_use": _over(off, self._fact("require.flatness_mm")) if off else None,
             "stable_depth_use": self._stability(plan, load),
         }
