@@ -8,6 +8,7 @@ from typing import Any
 import click
 
 from millreason import __version__
+from millreason.cli_explain import COMMANDS, argued
 from millreason.cli_lists import machines, materials, rules
 from millreason.console import SHOP, guarded, in_colour, load, page_width, say, write
 
@@ -19,6 +20,7 @@ cutter, its position, speeds and feeds, checked against the machine, and every r
 \b
 Begin with:   millreason choose JOB.yaml
 For paper:    millreason choose JOB.yaml --form html --out sheet.html
+Argue it:     millreason why JOB.yaml, why-not JOB.yaml pitch=coarse, holds JOB.yaml, assumptions JOB.yaml
 
 \b
 Exit codes:
@@ -49,20 +51,28 @@ def main() -> None:
 @click.option("--out", type=click.Path(dir_okay=False, path_type=Path), help="Write to this file instead.")
 @click.option("--full", is_flag=True, help="On the screen: the whole argument, with every rule and number.")
 @click.option(
+    "--argue",
+    is_flag=True,
+    help="In any form: why not another cutter, how far the choice holds, which assumption matters.",
+)
+@click.option(
     "--engine",
     type=click.Choice(["durable", "twin"]),
     help="Which inference engine runs the rules; both give the same answer.",
 )
 @SHOP
 @guarded
-def choose(job: Path, form: Any, out: Path | None, full: bool, engine: str | None, shop: Path | None) -> None:
+def choose(
+    job: Path, form: Any, out: Path | None, full: bool, argue: bool, engine: str | None, shop: Path | None
+) -> None:
     """Choose a cutter for the job in JOB (a YAML file) and argue the choice.
 
     The exit code is 0 for an answer, 3 when questions come first, 4 for a refusal, 2 for bad input.
     """
     from millreason.report import render
 
-    answer = load(shop, engine).choose_file(job)
+    adviser = load(shop, engine)
+    answer = argued(adviser, job) if argue or full else adviser.choose_file(job)
     colour = out is None and in_colour()
     text = render(answer, form, full=full, width=page_width(), colour=colour)
     if out is None:
@@ -81,8 +91,8 @@ def schema() -> None:
     say(schema_text().removesuffix("\n"))
 
 
-for group in (rules, materials, machines):
-    main.add_command(group)
+for command in (*COMMANDS, rules, materials, machines):
+    main.add_command(command)
 
 
 if __name__ == "__main__":

@@ -7,7 +7,7 @@ from collections.abc import Mapping
 
 from millreason.explanation_records import Result
 from millreason.job import Value
-from millreason.report.words import clean, fact_words, option, pick_name, pick_option
+from millreason.report.words import clean, fact_words, option, pick_words
 from millreason.units import INCH_SHOWN, convert, plain
 from millreason.variations import DIGITS
 from millreason.vocabulary import Vocabulary
@@ -58,8 +58,7 @@ def option_words(pick: str, name: str, system: str) -> str:
     """Return a pick with its option: 'pitch coarse', 'lead 15 deg (kappa 75 deg)', 'cutter A-12 on hand'."""
     if pick == "cutter":
         return f"cutter {clean(name)} on hand"
-    told = pick_option(pick, name, system)
-    return told if pick in ("kappa_deg", "corner") else f"{pick_name(pick)} {told}"
+    return pick_words(pick, name, system)
 
 
 def picks_changed(before: Result, after: Result) -> dict[str, str]:

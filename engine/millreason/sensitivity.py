@@ -188,8 +188,17 @@ def _nearness(entry: Input, value: Value) -> float:
 
 def _question(reruns: Reruns, entry: Input, effect: str, rule: str) -> Question:
     definition = entry.definition
-    text = definition.ask or f"{definition.means}: what is it?"
-    return Question(entry.fact, text, definition.because or "", "useful", [rule] if rule else [], effect)
+    told = next((firing.why for firing in reruns.outcome.firings if firing.rule == rule), "")
+    text = definition.ask or f"{definition.means}: {_choices(entry)}?"
+    return Question(entry.fact, text, definition.because or told, "useful", [rule] if rule else [], effect)
+
+
+def _choices(entry: Input) -> str:
+    if entry.is_number:
+        return "how much"
+    if entry.definition.kind == "flag":
+        return "yes or no"
+    return " or ".join(value_words(option, "", "metric") for option in entry.definition.options)
 
 
 def rank_questions(reruns: Reruns, questions: list[Question], assumptions: list[Assumption]) -> list[Question]:

@@ -63,16 +63,12 @@ def schema() -> str:
     return json.dumps(answer_schema(), indent=2) + "\n"
 
 
-def make_page(answer: Answer, more: Iterable[Section] = ()) -> Page:
-    """Return the report as titled sections of plain blocks, which every printed form shares."""
-    from millreason.report.argument import argument_sections
-    from millreason.report.buying import buying_section
-    from millreason.report.opening import opening_sections
+def make_page(answer: Answer, more: Iterable[Section] = (), only: Iterable[Section] | None = None) -> Page:
+    """Return the report as titled sections of plain blocks, which every printed form shares.
 
-    bought = buying_section(answer) if answer.verdict in ("recommend", "recommend_with_warnings") else None
-    sections = insert_sections(
-        [*opening_sections(answer), *argument_sections(answer)], [*more, *([bought] if bought else [])]
-    )
+    With `only`, these sections stand under the head of the report in place of its own.
+    """
+    sections = tuple(only) if only is not None else _sections(answer, more)
     return Page(
         clean(answer.job),
         clean(answer.file),
@@ -82,6 +78,19 @@ def make_page(answer: Answer, more: Iterable[Section] = ()) -> Page:
         clean(answer.summary),
         sections,
         footer(answer),
+    )
+
+
+def _sections(answer: Answer, more: Iterable[Section]) -> tuple[Section, ...]:
+    from millreason.report.argument import argument_sections
+    from millreason.report.buying import buying_section
+    from millreason.report.explanation import explanation_sections
+    from millreason.report.opening import opening_sections
+
+    argued = explanation_sections(answer) if answer.explanation is not None else []
+    bought = buying_section(answer) if answer.verdict in ("recommend", "recommend_with_warnings") else None
+    return insert_sections(
+        [*opening_sections(answer), *argument_sections(answer)], [*argued, *more, *([bought] if bought else [])]
     )
 
 
