@@ -164,10 +164,12 @@ def summary(results: list[Result]) -> str:
     """Return the table of verdicts, limits, relatives and times."""
     verdicts = Counter(result.verdict for result in results)
     limits = Counter(limit for result in results for limit in result.limits)
+    alone = Counter(result.limits[0] for result in results if len(result.limits) == 1)
     also = Counter(name for result in results for name in result.also)
     times = sorted(result.seconds for result in results)
     lines = [f"{len(results)} jobs, {sum(1 for result in results if result.faults)} with a fault"]
-    for title, table in (("verdicts", verdicts), ("limits that refuse", limits), ("run again", also)):
+    tables = {"verdicts": verdicts, "limits that refuse": limits, "limits that refuse alone": alone, "run again": also}
+    for title, table in tables.items():
         lines.append(f"{title}: " + ", ".join(f"{name} {count}" for name, count in table.most_common()))
     marks = {"median": 0.5, "19 of 20": 0.95, "999 of 1000": 0.999}
     shown = [f"{name} {times[int(share * (len(times) - 1))] * 1000:.0f} ms" for name, share in marks.items()]
