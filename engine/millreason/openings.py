@@ -2,14 +2,16 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator
 from dataclasses import replace
 from itertools import combinations
 from typing import TYPE_CHECKING, Any
 
+from millreason.explain_words import value_words
 from millreason.job import Job
 from millreason.trace import LimitRecord, Opening
-from millreason.units import show
+from millreason.variations import DIGITS, tidy
 
 if TYPE_CHECKING:
     from millreason.choice import Adviser
@@ -42,10 +44,10 @@ class _Openings:
     """Looks for openings on a quick adviser; what is returned has been run on the adviser that answers."""
 
     def __init__(self, adviser: Adviser, out: Outcome) -> None:
-        from millreason.quick import QuickAdviser
+        from millreason.quick import quick_and_sure
 
         self._adviser = adviser
-        self._quick = QuickAdviser(adviser)
+        self._quick, _ = quick_and_sure(adviser)
         self._out = out
 
     def find(self, facts: list[str]) -> list[Opening]:
@@ -103,7 +105,7 @@ class _Openings:
                 open_at = middle
             else:
                 shut = middle
-        return open_at
+        return _printable(open_at, fact)
 
     def _pairs(self, facts: list[str]) -> Iterator[Opening]:
         """Yield pairs where no change alone is enough: one fact freed far, the other changed as little as needed."""
@@ -145,20 +147,18 @@ class _Openings:
                     yield opening
 
 
+def _printable(value: float, fact: str) -> float:
+    """Return the number that is printed, rounded to the side that is easier still: what is printed is what is run."""
+    scale = 10.0 ** (DIGITS - 1 - math.floor(math.log10(value)))
+    rounded = math.floor(value * scale) if fact in LESS_IS_EASIER else math.ceil(value * scale)
+    return tidy(rounded / scale)
+
+
 def _text(adviser: Adviser, out: Outcome, changes: dict[str, Any]) -> str:
     parts = []
     for fact, value in changes.items():
         definition = adviser.vocabulary.facts[fact]
         before = out.situation.value(fact)
-        now = _shown(value, definition.unit, out.job.units)
-        parts.append(
-            f"{definition.means[0].lower()}{definition.means[1:]}: {now} instead of "
-            f"{_shown(before, definition.unit, out.job.units)}"
-        )
+        now, was = (value_words(entry, definition.unit, out.job.units) for entry in (value, before))
+        parts.append(f"{definition.means[0].lower()}{definition.means[1:]}: {now} instead of {was}")
     return "; and ".join(parts)
-
-
-def _shown(value: Any, unit: str, system: str) -> str:
-    if isinstance(value, bool):
-        return "yes" if value else "no"
-    return show(float(value), unit, system) if isinstance(value, int | float) else str(value).replace("_", " ")

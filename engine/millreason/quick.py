@@ -12,6 +12,7 @@ from collections import defaultdict
 from collections.abc import Hashable, Iterable, Iterator, Mapping
 from functools import cached_property
 from typing import TYPE_CHECKING, Any
+from weakref import WeakKeyDictionary
 
 from millreason.choice import Adviser
 from millreason.facts import Situation, basis_record
@@ -33,6 +34,9 @@ if TYPE_CHECKING:
 _MOST_REMEMBERED = 20_000
 _MOST_PLANS = 3_000
 _Plans = defaultdict[tuple[Hashable, ...], "list[tuple[dict[str, Any], Plan, dict[str, Any]]]"]
+
+
+_MADE: WeakKeyDictionary[Adviser, tuple[QuickAdviser, QuickAdviser]] = WeakKeyDictionary()
 
 
 class QuickAdviser(Adviser):
@@ -62,6 +66,14 @@ class QuickAdviser(Adviser):
         if self._compiled is not None:
             return {name: _QuietStage(stage) for name, stage in self._compiled.items()}
         return {name: _RememberingStage(stage) for name, stage in super().stages.items()}
+
+
+def quick_and_sure(adviser: Adviser) -> tuple[QuickAdviser, QuickAdviser]:
+    """Return the advisers for re-runs: one that remembers, and one that runs the rules on the adviser's own engine."""
+    if adviser not in _MADE:
+        quick = QuickAdviser(adviser)
+        _MADE[adviser] = quick, QuickAdviser(adviser, sure=quick)
+    return _MADE[adviser]
 
 
 class _RememberedMaterials:

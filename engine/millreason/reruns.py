@@ -5,7 +5,6 @@ from __future__ import annotations
 from collections.abc import Callable, Mapping
 from dataclasses import replace
 from typing import TYPE_CHECKING
-from weakref import WeakKeyDictionary
 
 from millreason.answer import verdict_of
 from millreason.choice import Adviser
@@ -13,7 +12,7 @@ from millreason.errors import MillreasonError
 from millreason.explanation_records import Result
 from millreason.job import Given, Job, Value
 from millreason.limits import binding_limits
-from millreason.quick import QuickAdviser
+from millreason.quick import quick_and_sure
 from millreason.vocabulary import Vocabulary
 
 if TYPE_CHECKING:
@@ -23,8 +22,6 @@ Changes = Mapping[str, Value | None]
 Tick = Callable[[int], None]
 _Key = tuple[tuple[str, Value | None], ...]
 
-_QUICK: WeakKeyDictionary[Adviser, tuple[QuickAdviser, QuickAdviser]] = WeakKeyDictionary()
-
 
 class Reruns:
     """Runs one job with changed inputs and remembers every result."""
@@ -33,7 +30,7 @@ class Reruns:
         self.adviser = adviser
         self.job = job
         self.vocabulary = adviser.vocabulary
-        self._quick, self._sure = _quick_and_sure(adviser)
+        self._quick, self._sure = quick_and_sure(adviser)
         self._tick = tick
         self._results: dict[_Key, Result] = {}
         self._confirmed: dict[_Key, Result] = {}
@@ -86,14 +83,6 @@ class Reruns:
                 self._tick(len(self._results) + len(self._confirmed))
             known[key] = run(adviser, changed_job(self.job, changes, self.vocabulary))
         return known[key]
-
-
-def _quick_and_sure(adviser: Adviser) -> tuple[QuickAdviser, QuickAdviser]:
-    """Return the advisers for re-runs: one that remembers, and one that runs the rules on the adviser's own engine."""
-    if adviser not in _QUICK:
-        quick = QuickAdviser(adviser)
-        _QUICK[adviser] = quick, QuickAdviser(adviser, sure=quick)
-    return _QUICK[adviser]
 
 
 def changed_job(job: Job, changes: Changes, vocabulary: Vocabulary) -> Job:
