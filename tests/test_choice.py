@@ -9,7 +9,7 @@ from pathlib import Path
 
 import pytest
 
-from example_jobs import CASES, IRON, PLATE, ROOT, SHOULDER, TITANIUM, WEAK, adviser, answered, case, read
+from example_jobs import CASES, IRON, PLATE, ROOT, SHOULDER, TITANIUM, WEAK, adviser, answered, case, decided, read
 from millreason.answer import write_answer
 from millreason.candidates import Catalogue
 from millreason.inference import engine_names
@@ -111,3 +111,8 @@ def test_only_keeps_to_the_named_options() -> None:
     out = adviser().decide(read(PLATE), {"pitch": "coarse", "kappa_deg": "90"})
     assert out.stands
     assert {(one.candidate.pitch, one.candidate.family.kappa_deg) for one in out.stands} == {("coarse", 90.0)}
+
+
+def test_a_large_count_is_no_doubt_about_a_unit() -> None:
+    assert not decided(PLATE.replace("quantity: 10", "quantity: 20000")).unit_doubts
+    assert decided(PLATE.replace("length: 300 mm", "length: 25000 mm")).unit_doubts

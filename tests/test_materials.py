@@ -159,7 +159,6 @@ def test_named_material_is_found(text: str, entry: str, state: str, hardness: st
         "magnesium casting",
         "wear plate",
         "80-55-06",
-        "C101",
         "1050",
         "cast iron 316 x 200 x 40",
     ],
@@ -308,6 +307,13 @@ def test_contradictions_show_both_sides(
 def test_consistent_statements_raise_no_contradiction(text: str, group: str, hardness: float | None) -> None:
     found = find_material(BOOK, text, group, hardness)  # type: ignore[arg-type]
     assert find_contradictions(BOOK, found, group, hardness) == []  # type: ignore[arg-type]
+
+
+def test_one_name_for_alloys_that_cut_alike_does_not_stop_the_job() -> None:
+    """C101 is an electrolytic copper in one country and an oxygen-free one in another; both are cut the same way."""
+    found = find_material(BOOK, "C101 copper")
+    assert isinstance(found, Found)
+    assert any("Cu-ETP or Cu-OF" in doubt and "cut alike" in doubt for doubt in found.doubts)
 
 
 def test_hardness_moves_force_and_speed_the_right_way() -> None:

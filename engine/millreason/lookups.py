@@ -61,7 +61,7 @@ def first_situation(job: Job, knowledge: Knowledge, materials: Materials, vocabu
 
 
 def unit_doubts(situation: Situation, vocabulary: Vocabulary, far: float) -> list[str]:
-    """Return a sentence for every given number that lies so far from the usual span that its unit is in doubt."""
+    """Return a sentence for every given quantity so far from the usual span that its unit is in doubt; counts have none."""
     doubts = []
     for record in situation.records():
         definition = vocabulary.facts.get(record.name)
@@ -69,6 +69,7 @@ def unit_doubts(situation: Situation, vocabulary: Vocabulary, far: float) -> lis
             record.origin != "given"
             or definition is None
             or definition.plausible is None
+            or not definition.unit
             or not isinstance(record.value, float)
         ):
             continue

@@ -8,6 +8,7 @@ from dataclasses import dataclass, replace
 from millreason.errors import OutOfRangeError
 from millreason.hardness import Converted, hardness_as_hb
 from millreason.material_book import Material, MaterialBook, State
+from millreason.material_facts import speed_pick
 from millreason.material_index import (
     GROUP_RANK,
     NEAR_RANK,
@@ -124,6 +125,9 @@ def find_material(
         entries = _narrowed(book, entries, said, iso_group, hardness_hb)
     if len(entries) == 1:
         return _found(book, entries[0], best, said, hardness_hb)
+    if entries and _one_word_for_alike(book, entries, best):
+        doubt = f"{_used_for(entries, best)}; they cut alike, and {entries[0].name} is taken."
+        return _found(book, entries[0], best, said, hardness_hb, [doubt])
     if entries:
         return _several(entries, best, said)
     if outside:
@@ -247,9 +251,14 @@ def _narrowed(
 
 
 def _found(
-    book: MaterialBook, material: Material, hits: Sequence[NameHit], said: Said, hardness_hb: float | None
+    book: MaterialBook,
+    material: Material,
+    hits: Sequence[NameHit],
+    said: Said,
+    hardness_hb: float | None,
+    known_doubts: Sequence[str] = (),
 ) -> Found:
-    doubts = []
+    doubts = list(known_doubts)
     hit = next(hit for hit in hits if hit.material is material)
     if hit.slip_of:
         doubts.append(f"{hit.said!r} is read as {hit.slip_of!r}.")
@@ -306,11 +315,22 @@ def _first_state(material: Material, named: Sequence[str]) -> tuple[State, str]:
     return state, f"State not said: {taken}; it could be {could_be}."
 
 
+def _one_word_for_alike(book: MaterialBook, entries: Sequence[Material], hits: Sequence[NameHit]) -> bool:
+    """Tell whether one name is used for several entries of the same family, dangers, group and speed."""
+    firsts = [(entry, entry.states[0]) for entry in entries]
+    kinds = {(e.family, e.hazards, state.group, speed_pick(book, state).speed) for e, state in firsts}
+    return len(kinds) == 1 and len({hit.said for hit in hits}) == 1
+
+
+def _used_for(entries: Sequence[Material], hits: Sequence[NameHit]) -> str:
+    return f"{hits[0].said!r} is used for {' or '.join(entry.name for entry in entries)}"
+
+
 def _several(entries: Sequence[Material], hits: Sequence[NameHit], said: Said) -> Ambiguous:
     words = tuple(dict.fromkeys(hit.said for hit in hits))
     listed = " or ".join(entry.name for entry in entries)
     if len(words) == 1:
-        why = f"{words[0]!r} is used for {listed}."
+        why = f"{_used_for(entries, hits)}."
     else:
         why = f"{' and '.join(repr(word) for word in words)} are different materials: {listed}."
     return Ambiguous(tuple(entries), why, f"Which is it: {listed}?", said)
