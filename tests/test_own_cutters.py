@@ -39,14 +39,16 @@ def test_the_answer_picks_from_the_shelf() -> None:
 
 
 def test_an_angle_between_families_is_kept() -> None:
-    (one,) = candidates("cutters: [{id: X, cutter_class: face_mill, diameter: 80 mm, teeth: 6, kappa: 65 deg}]").values()
+    fields = "cutter_class: face_mill, diameter: 80 mm, teeth: 6, kappa: 65 deg"
+    (one,) = candidates(f"cutters: [{{id: X, {fields}}}]").values()
     assert one.family.kappa_deg == 65
     assert one.options["kappa_deg"] == "65"
 
 
 @pytest.mark.parametrize("limit", [700, 5000])
 def test_the_speed_marked_on_a_body_is_never_exceeded(limit: int) -> None:
-    answer = answered(f"{PLATE}cutters: [{{id: X, diameter: 63 mm, teeth: 5, kappa: 45 deg, speed_limit: {limit} rpm}}]")
+    fields = f"diameter: 63 mm, teeth: 5, kappa: 45 deg, speed_limit: {limit} rpm"
+    answer = answered(f"{PLATE}cutters: [{{id: X, {fields}}}]")
     assert answer.plan is not None
     assert max(step.spindle_speed_rpm for step in answer.plan.steps) <= limit
 
@@ -59,7 +61,10 @@ def test_a_shelf_that_does_not_do_is_a_refusal_that_names_the_limit() -> None:
     assert "cutter_on_hand" in {limit.key for limit in answer.refusal.limits}
 
 
-@pytest.mark.parametrize("fields", ["cutter_class: high_feed_mill, usable_depth: 15 mm", "cutter_class: round_insert_mill"])
+HIGH_FEED, ROUND = "cutter_class: high_feed_mill, usable_depth: 15 mm", "cutter_class: round_insert_mill"
+
+
+@pytest.mark.parametrize("fields", [HIGH_FEED, ROUND])
 @pytest.mark.parametrize("diameter", [12, 25, 63])
 def test_a_body_measured_at_the_outside_keeps_a_floor(fields: str, diameter: int) -> None:
     for one in candidates(f"cutters: [{{id: X, diameter: {diameter} mm, teeth: 3, {fields}}}]").values():
