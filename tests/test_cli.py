@@ -90,6 +90,7 @@ def test_the_exit_code_is_that_of_the_verdict(name: str, code: int, job: Path, m
 
 def test_each_form_is_written(job: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     answered_with(monkeypatch, answers.recommended())
+    monkeypatch.setattr("millreason.cli.argued", lambda adviser, path: adviser.choose_file(path))
     assert "SETUP SHEET" in run("choose", str(job)).output
     assert "EVERY RULE THAT FIRED" in run("choose", str(job), "--full").output
     assert run("choose", str(job), "--form", "html").output.startswith("<!DOCTYPE html>")
