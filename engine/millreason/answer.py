@@ -158,15 +158,19 @@ def _questions(adviser: Adviser, out: Outcome) -> list[Question]:
 
 
 def _others(out: Outcome) -> list[Tried]:
-    """Return the best candidates of other bodies or sizes than the chosen one."""
-    seen = {(out.stands[0].candidate.family.id, out.stands[0].candidate.size.label)}
+    """Return the best candidates of another class, angle or size than the chosen one."""
+    seen = {_kind(out.stands[0])}
     others = []
     for tried in out.stands[1:]:
-        kind = (tried.candidate.family.id, tried.candidate.size.label)
-        if kind not in seen:
-            seen.add(kind)
+        if _kind(tried) not in seen:
+            seen.add(_kind(tried))
             others.append(tried)
     return others[:3]
+
+
+def _kind(tried: Tried) -> tuple[str, float, str]:
+    family = tried.candidate.family
+    return family.cutter_class, family.kappa_deg, tried.candidate.size.label
 
 
 def _candidate(tried: Tried, outcome: str) -> CandidateRecord:

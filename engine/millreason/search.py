@@ -20,6 +20,7 @@ if TYPE_CHECKING:
 
 EXTRA_TRIES = 12
 Kin = tuple[Any, ...]
+BODY_PICKS = ("cutter_class", "kappa_deg", "diameter_mm")
 
 
 class Search:
@@ -48,6 +49,9 @@ class Search:
                 tried = self._try(candidate)
                 (out.rejected if tried.limits else out.stands).append(tried)
                 dead.update(self._ruled_out_with(tried))
+                if self._best is not None and candidate.evidence <= self._best:
+                    # From here on only runners-up of other bodies and sizes are of interest.
+                    dead.update(_kin(standing.candidate)[0] for standing in out.stands)
         out.stands.sort(key=lambda tried: -tried.standing)
 
     def _candidates(self, only: Mapping[str, str], dead: set[Kin]) -> Iterator[Candidate]:
@@ -59,15 +63,16 @@ class Search:
             return iter(own_candidates(own, cutters, out.ledgers, offered))
         return Catalogue(cutters, out.ledgers, out.job.units, offered, only).best_first(dead)
 
+    @property
+    def _best(self) -> float | None:
+        return max((tried.standing for tried in self._out.stands), default=None)
+
     def _settled(self, candidate: Candidate) -> bool:
         """Whether no candidate from here on can beat the best, and enough runners-up are known."""
-        stands = self._out.stands
-        if not stands:
+        stands, best = self._out.stands, self._best
+        if best is None or candidate.evidence > best:
             return False
-        best = max(tried.standing for tried in stands)
-        if candidate.evidence > best:
-            return False
-        kinds = {(tried.candidate.family.id, tried.candidate.size.label) for tried in stands}
+        kinds = {tuple(map(tried.candidate.options.get, BODY_PICKS)) for tried in stands}
         beyond = sum(1 for tried in stands + self._out.rejected if tried.candidate.evidence <= best)
         return len(kinds) > self._adviser.runners_up or beyond >= EXTRA_TRIES
 
