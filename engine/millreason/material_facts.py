@@ -100,7 +100,7 @@ def notes_of_state(book: MaterialBook, material: Material, state: State, hb: flo
     row, _ = book.forces[state.force]
     texts = (
         _force_ratio(book, state, hb).limit,
-        row.note,
+        f"Force data for {row.for_}: {row.note}" if row.note else "",
         *speed_pick(book, state, hb).notes,
         material.note,
     )
@@ -167,7 +167,8 @@ def _notes(used: Sequence[SpeedRow], rows: Sequence[SpeedRow], hb: float) -> tup
     limit = ""
     if not low <= hb <= high:
         limit = f"Start speeds are held for {low:g} to {high:g} HB; at {hb:.0f} HB the nearest end is used."
-    return tuple(text for text in (limit, *(row.note for row in used)) if text)
+    said = [f"Speed data for {row.for_}: {row.note}" for row in used if row.note]
+    return (limit, *said) if limit else tuple(said)
 
 
 def uncoated_factor(book: MaterialBook, group: Group) -> tuple[float, Basis] | None:

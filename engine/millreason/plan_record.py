@@ -129,7 +129,8 @@ def _position(chosen: Tried, system: str) -> str:
     side = "the side where the teeth leave" if chosen.plan.direction == "climb" else "the side where the teeth enter"
     if not layout.one_pass:
         reach = show(layout.width_mm, "mm", system)
-        return f"passes step across the work; each reaches {reach} into it, and the teeth leave with a thin chip"
+        ends = "leave" if chosen.plan.direction == "climb" else "enter"
+        return f"passes step across the work; each reaches {reach} into it, and the teeth {ends} with a thin chip"
     if layout.offset_mm <= 0:
         return "cutter centred on the work; there is no room to offset it"
     offset = show(layout.offset_mm, "mm", system)
