@@ -143,7 +143,7 @@ def test_why_not_prints_reason_ledgers_and_change(job: str) -> None:
 def test_holds_and_assumptions_print_their_tables(job: str) -> None:
     text = run("holds", job)
     assert "HOLDS WHILE" in text
-    assert "machine: power" in text
+    assert "(assumed)" in text
     assert "The picks stay while the force lies between" in " ".join(text.split())
     assert "WHICH ASSUMPTION MATTERS" in run("assumptions", job)
 

@@ -132,6 +132,10 @@ def holds_section(units: str, intervals: list[Interval], options: list[Options])
     return _placed("margins", section("holds", "Holds while", (how, *blocks), (how, *short)))
 
 
+def _name(fact: str, origin: str) -> str:
+    return fact_words(fact) if origin == "given" else f"{fact_words(fact)} ({origin_text(origin)})"
+
+
 def _interval_row(entry: Interval, units: str) -> tuple[str, ...]:
     def words(value: float) -> str:
         return value_words(value, entry.unit, units)
@@ -140,7 +144,7 @@ def _interval_row(entry: Interval, units: str) -> tuple[str, ...]:
     high = words(entry.high.inside) if entry.high else f"{words(entry.bounds[1])} *"
     below = f"at {words(entry.low.beyond)}: {entry.low.then}" if entry.low else ""
     above = f"at {words(entry.high.beyond)}: {entry.high.then}" if entry.high else ""
-    name = f"{fact_words(entry.fact)} ({origin_text(entry.origin)})"
+    name = _name(entry.fact, entry.origin)
     return name, words(entry.value), low, high, clean(below), clean(above)
 
 
@@ -149,7 +153,7 @@ def _options_row(entry: Options, units: str) -> list[tuple[str, ...]]:
     by_outcome: dict[str, list[Alternative]] = {}
     for other in entry.other:
         by_outcome.setdefault(other.then, []).append(other)
-    name = f"{fact_words(entry.fact)} ({origin_text(entry.origin)})"
+    name = _name(entry.fact, entry.origin)
     now = value_words(entry.value, "", units)
     rows: list[tuple[str, ...]] = []
     for place, (then, values) in enumerate(by_outcome.items()):
