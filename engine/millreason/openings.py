@@ -19,6 +19,8 @@ if TYPE_CHECKING:
 
 FAR = 32.0
 MOST_MACHINES = 2
+# Candidates tried before the search for openings ends with what it has; most refusals need a tenth of it.
+MOST_TRIED = 12_000
 TOLERANCE = 0.01
 MOST_OPENINGS = 6
 # Facts of which less makes a job easier; of all others more does.
@@ -49,6 +51,7 @@ class _Openings:
         self._adviser = adviser
         self._quick, _ = quick_and_sure(adviser)
         self._out = out
+        self._left = MOST_TRIED
 
     def find(self, facts: list[str]) -> list[Opening]:
         single = [opening for fact in facts if (opening := self._single(fact)) is not None]
@@ -57,7 +60,10 @@ class _Openings:
 
     def _opens(self, job: Job) -> str | None:
         """Return what a changed job would get, or None while it is still refused or asked about."""
+        if self._left <= 0:
+            return None
         outcome = self._quick.decide(job)
+        self._left -= len(outcome.rejected) + len(outcome.stands)
         if outcome.must_ask or outcome.limits or not outcome.stands:
             return None
         return outcome.stands[0].candidate.label

@@ -60,7 +60,12 @@ class Search:
         offered = self._interface.mountings.options
         own = own_cutters(out.job, self._adviser.knowledge)
         if own:
-            return iter(own_candidates(own, cutters, out.ledgers, offered))
+            made = own_candidates(own, cutters, out.ledgers, offered)
+            left = {cutter.id for cutter in own} - {candidate.own.id for candidate in made if candidate.own}
+            out.notes.extend(
+                f"Cutter {name} is left aside: its class, angle and size fit no body." for name in sorted(left)
+            )
+            return iter(made)
         return Catalogue(cutters, out.ledgers, out.job.units, offered, only).best_first(dead)
 
     @property
