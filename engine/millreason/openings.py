@@ -19,8 +19,8 @@ if TYPE_CHECKING:
 
 FAR = 32.0
 MOST_MACHINES = 2
-# Candidates tried before the search for openings ends with what it has; most refusals need a tenth of it.
-MOST_TRIED = 12_000
+# Candidates tried before the search for openings ends with what it has; most refusals need less.
+MOST_TRIED = 6_000
 TOLERANCE = 0.01
 MOST_OPENINGS = 6
 # Facts of which less makes a job easier; of all others more does.
