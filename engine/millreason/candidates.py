@@ -53,9 +53,12 @@ class Candidate:
 
     @property
     def speed_limit_rpm(self) -> float:
-        """Speed marked on the body; a generic body has none."""
+        """Speed marked on the body; a generic body has none, but an unbalanced one is held to its cautious speed."""
         marked = self.own.values.get("speed_limit_rpm") if self.own else None
-        return float(marked) if isinstance(marked, int | float) else math.inf
+        if isinstance(marked, int | float):
+            return float(marked)
+        caution = self.family.speed_caution
+        return caution.spindle_speed_rpm if caution.binding else math.inf
 
     @property
     def outermost_mm(self) -> float:

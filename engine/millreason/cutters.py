@@ -171,6 +171,7 @@ class SpeedCaution(Record):
 
     cutting_speed_m_min: PositiveFloat
     spindle_speed_rpm: PositiveFloat
+    binding: bool = False
     basis: Text
 
 

@@ -61,7 +61,7 @@ def first_situation(job: Job, knowledge: Knowledge, materials: Materials, vocabu
 
 
 def unit_doubts(situation: Situation, vocabulary: Vocabulary, far: float) -> list[str]:
-    """Return a sentence for every given quantity so far from the usual span that its unit is in doubt; counts have none."""
+    """Return a sentence for every given quantity so far from the usual that its unit is in doubt; counts have none."""
     doubts = []
     for record in situation.records():
         definition = vocabulary.facts.get(record.name)

@@ -45,6 +45,9 @@ bar = 0.1 N / mm ** 2
 megapascal = N / mm ** 2 = MPa
 kilopascal = 0.001 MPa = kPa
 psi = lbf / in ** 2
+mm2 = mm ** 2
+cm2 = cm ** 2
+in2 = in ** 2
 unity = [] = one
 percent = 0.01 one = pct
 """
@@ -52,6 +55,7 @@ percent = 0.01 one = pct
 # What may be written for a fact stored in the unit on the left; the first is the one suggested.
 UNITS_ALLOWED: dict[str, tuple[str, ...]] = {
     "mm": ("mm", "in", "um", "cm", "m", "ft", "thou"),
+    "mm2": ("mm2", "cm2", "in2"),
     "um": ("um", "uin", "mm", "in", "thou"),
     "kg": ("kg", "lb", "g"),
     "N": ("N", "kN", "lbf"),

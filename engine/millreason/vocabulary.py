@@ -68,8 +68,8 @@ class Vocabulary(BaseModel):
 
 
 _SUFFIXES = {
-    "mm": "_mm", "um": "_um", "kg": "_kg", "N": "_n", "kW": "_kw", "N.m": "_nm", "rpm": "_rpm", "mm/min": "_mm_min",
-    "m/min": "_m_min", "min": "_min", "HB": "_hb", "N/um": "_n_um", "currency/h": "_per_h",
+    "mm": "_mm", "mm2": "_mm2", "um": "_um", "kg": "_kg", "N": "_n", "kW": "_kw", "N.m": "_nm", "rpm": "_rpm",
+    "mm/min": "_mm_min", "m/min": "_m_min", "min": "_min", "HB": "_hb", "N/um": "_n_um", "currency/h": "_per_h",
 }  # fmt: skip
 
 

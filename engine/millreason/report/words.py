@@ -47,7 +47,6 @@ _PICKS = {
 _JOB_KEYS = {
     "require.finish_ra_um": "require.finish",
     "machine.spindle_tilt_mm_m": "machine.spindle_tilt_mm_m",
-    "fixture.sealed_area_mm2": "fixture.sealed_area_mm2",
 }
 # The corners of the area on the insert that meets the work, as `formulas.first_contact` names them.
 _CONTACT = {
