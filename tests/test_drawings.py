@@ -6,10 +6,10 @@ from xml.etree import ElementTree
 
 import pytest
 
-from millreason import charts, drawings, svg
-from millreason.charts import Bar, WorkingPoint, margin_bars, power_at
-from millreason.drawings import CutView, EdgeAngles, PassMap, cutter_over_work, pass_map, rakes_and_lead
 from millreason.formulas.engagement import engagement_arc
+from millreason.report import charts, drawings, svg
+from millreason.report.charts import Bar, WorkingPoint, margin_bars, power_at
+from millreason.report.drawings import CutView, EdgeAngles, PassMap, cutter_over_work, pass_map, rakes_and_lead
 
 SVG = "{http://www.w3.org/2000/svg}"
 VIEW = CutView(100.0, 112.0, 60.0, 25.0, *(0.0, 0.0), "climb")

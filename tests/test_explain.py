@@ -11,15 +11,15 @@ import pytest
 from example_jobs import CASES, IRON, PLATE, SHOULDER, TITANIUM, WEAK, adviser, case, read
 from millreason.choice import Adviser
 from millreason.errors import DataError, MillreasonError
-from millreason.explain import assumptions, explain, holds_while, robustness, why, why_all, why_not
+from millreason.explain.argument import assumptions, explain, holds_while, robustness, why, why_all, why_not
+from millreason.explain.quick import quick_and_sure
+from millreason.explain.reruns import changed_job, result_of, run
+from millreason.explain.sensitivity import effect_of
+from millreason.explain.variations import Input, Span, other_values, rule_lines, tidy
+from millreason.explain.why import tree_lines
 from millreason.explanation_records import Because, Explanation, Interval, Result
 from millreason.job import Job
-from millreason.quick import quick_and_sure
-from millreason.reruns import changed_job, result_of, run
-from millreason.sensitivity import effect_of
 from millreason.trace import Answer, answer_schema
-from millreason.variations import Input, Span, other_values, rule_lines, tidy
-from millreason.why import tree_lines
 
 ON_HAND = f"""{PLATE}
 cutters:

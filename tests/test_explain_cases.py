@@ -9,10 +9,10 @@ import pytest
 import yaml
 
 from example_jobs import CASES, adviser, case
-from millreason.explain import explain, why_not
+from millreason.explain.argument import explain, why_not
+from millreason.explain.reruns import changed_job, run
 from millreason.explanation_records import Explanation, Result, WhyNot
 from millreason.job import Job
-from millreason.reruns import changed_job, run
 from millreason.trace import Answer
 
 SCENARIOS = {

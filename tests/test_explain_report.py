@@ -12,7 +12,7 @@ from click.testing import CliRunner
 
 from example_jobs import IRON, PLATE, TITANIUM, WEAK, adviser, read
 from millreason.cli import main
-from millreason.explain import explain
+from millreason.explain.argument import explain
 from millreason.report import render
 from millreason.report.argument_picture import argument_picture
 from millreason.report.holds_chart import holds_chart

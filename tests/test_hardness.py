@@ -8,7 +8,8 @@ from pathlib import Path
 import pytest
 
 from millreason.errors import DataError, OutOfRangeError
-from millreason.hardness import (
+from millreason.knowledge import load_sources
+from millreason.materials.hardness import (
     convert_hardness,
     hardness_as_hb,
     hardness_force_ratio,
@@ -16,7 +17,6 @@ from millreason.hardness import (
     load_hardness,
     unit_power,
 )
-from millreason.knowledge import load_sources
 
 ROOT = Path(__file__).parents[1]
 SOURCES = load_sources(ROOT)

@@ -12,7 +12,7 @@ import pytest
 
 from millreason.errors import MillreasonError, OutOfRangeError, RuleActionError, RuleSetLimitError
 from millreason.inference import Fact, InferenceRule, RuleEngine, Test, engine_names, make_engine
-from millreason.matching import MOST_FACTS, MOST_FIRINGS
+from millreason.inference.matching import MOST_FACTS, MOST_FIRINGS
 
 BRIEF = [
     InferenceRule("LONG", (Test("chip", "eq", "long"),)),
@@ -280,7 +280,7 @@ def test_the_durable_engine_is_the_default_where_it_works():
 
 def test_without_the_extension_the_twin_serves(monkeypatch):
     monkeypatch.setitem(sys.modules, "durable_rules_engine", None)
-    monkeypatch.delitem(sys.modules, "millreason.durable_session", raising=False)
+    monkeypatch.delitem(sys.modules, "millreason.inference.durable_session", raising=False)
     assert engine_names() == ("twin",)
     engine = make_engine(BRIEF)
     assert engine.name == "twin"

@@ -16,7 +16,9 @@ from pathlib import Path
 import pytest
 
 import millreason
-from millreason.durable_notation import (
+from millreason.errors import MillreasonError, RuleSetLimitError
+from millreason.inference import Fact, InferenceRule, Test, engine_names, make_engine
+from millreason.inference.durable_notation import (
     MOST_GROUPS,
     MOST_TESTS_AT_ONCE,
     MOST_USES_OF_A_NODE,
@@ -25,9 +27,7 @@ from millreason.durable_notation import (
     order_key,
     write_rules,
 )
-from millreason.errors import MillreasonError, RuleSetLimitError
-from millreason.inference import Fact, InferenceRule, Test, engine_names, make_engine
-from millreason.matching import (
+from millreason.inference.matching import (
     MOST_FACTS,
     MOST_RULES,
     MOST_TESTS,

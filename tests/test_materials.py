@@ -10,7 +10,6 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from millreason.errors import DataError
-from millreason.material_text import fold, join, key_of, leave_sizes_out, take_hardness
 from millreason.materials import (
     Ambiguous,
     Found,
@@ -21,6 +20,7 @@ from millreason.materials import (
     material_facts,
     speed_pick,
 )
+from millreason.materials.text import fold, join, key_of, leave_sizes_out, take_hardness
 from millreason.provenance import Basis
 
 ROOT = Path(__file__).parents[1]

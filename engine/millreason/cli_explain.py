@@ -15,9 +15,9 @@ from millreason.errors import MillreasonError
 
 if TYPE_CHECKING:
     from millreason.choice import Adviser
+    from millreason.explain.reruns import Tick
     from millreason.job import Job
     from millreason.report.page import Section
-    from millreason.reruns import Tick
     from millreason.trace import Answer
 
 JOB = click.argument("job", type=click.Path(exists=True, dir_okay=False, path_type=Path))
@@ -39,9 +39,9 @@ def why(job: Path, target: str | None, full: bool, engine: str | None, shop: Pat
     TARGET is a pick (pitch, lead, diameter ...), a caution, a fact (machine.power_kw), a computed value
     ('net power'), or the verdict; without it, the verdict and every pick.
     """
-    from millreason.explain import why as ask_why
-    from millreason.explain import why_all
-    from millreason.why import tree_lines
+    from millreason.explain.argument import why as ask_why
+    from millreason.explain.argument import why_all
+    from millreason.explain.why import tree_lines
 
     adviser = load(shop, engine)
     answer = adviser.choose_file(job)
@@ -62,7 +62,7 @@ def why_not(job: Path, choice: str, engine: str | None, shop: Path | None) -> No
     Write lead=15, pitch=coarse, rake=double_positive, class=high_feed_mill, diameter="3 in", or cutter=ID for
     a cutter on hand.
     """
-    from millreason.explain import why_not as ask_why_not
+    from millreason.explain.argument import why_not as ask_why_not
     from millreason.report.explanation import sides_table, why_not_item
     from millreason.report.page import Items, Say, Section, present
 
@@ -86,7 +86,7 @@ def why_not(job: Path, choice: str, engine: str | None, shop: Path | None) -> No
 @guarded
 def holds(job: Path, engine: str | None, shop: Path | None) -> None:
     """Show how far every input of JOB may move while the picks stay, and what they become beyond."""
-    from millreason.explain import holds_while, robustness
+    from millreason.explain.argument import holds_while, robustness
     from millreason.report.explanation import holds_section
     from millreason.report.page import Say, Section
 
@@ -108,7 +108,7 @@ def holds(job: Path, engine: str | None, shop: Path | None) -> None:
 @guarded
 def assumptions(job: Path, engine: str | None, shop: Path | None) -> None:
     """Show what each assumption behind the answer to JOB would change, the most important first."""
-    from millreason.explain import assumptions as weigh
+    from millreason.explain.argument import assumptions as weigh
     from millreason.report.explanation import assumptions_section
     from millreason.report.page import Say, Section
 
@@ -124,7 +124,7 @@ COMMANDS = [why, why_not, holds, assumptions]
 
 def argued(adviser: Adviser, path: Path) -> Answer:
     """Return the answer to a job file with the whole argument."""
-    from millreason.explain import explain
+    from millreason.explain.argument import explain
     from millreason.job import read_job
 
     job = read_job(path, adviser.vocabulary, adviser.knowledge.interface_names)

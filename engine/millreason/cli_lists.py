@@ -11,8 +11,8 @@ from millreason.console import BAD_INPUT, SHOP, guarded, load, say
 from millreason.errors import MillreasonError, did_you_mean
 
 if TYPE_CHECKING:
-    from millreason.material_book import Material
     from millreason.materials import Materials
+    from millreason.materials.book import Material
     from millreason.rulebook import Rule
 
 
@@ -126,7 +126,7 @@ def materials_list(group: Any, shop: Path | None) -> None:
 @guarded
 def materials_find(text: str, shop: Path | None) -> None:
     """Find the material a text means, as a job would: '304 stainless plate', 1.2379, brass."""
-    from millreason.material_search import Ambiguous, Found, find_material
+    from millreason.materials.search import Ambiguous, Found, find_material
 
     known = load(shop).materials
     result = find_material(known.book, text)

@@ -8,10 +8,10 @@ from dataclasses import replace
 from itertools import combinations
 from typing import TYPE_CHECKING, Any
 
-from millreason.explain_words import value_words
+from millreason.explain.variations import DIGITS, tidy
+from millreason.explain.words import value_words
 from millreason.job import Job
 from millreason.trace import LimitRecord, Opening
-from millreason.variations import DIGITS, tidy
 
 if TYPE_CHECKING:
     from millreason.choice import Adviser
@@ -46,7 +46,7 @@ class _Openings:
     """Looks for openings on a quick adviser; what is returned has been run on the adviser that answers."""
 
     def __init__(self, adviser: Adviser, out: Outcome) -> None:
-        from millreason.quick import quick_and_sure
+        from millreason.explain.quick import quick_and_sure
 
         self._adviser = adviser
         self._quick, _ = quick_and_sure(adviser)

@@ -152,7 +152,7 @@ class Planner:
         return max(min(aim, most), least), least
 
     def _kappa(self, candidate: Candidate, depth: float) -> tuple[float, float]:
-        """Return the cutting-edge angle at the top of the cut and its mean; for a round insert they follow the depth."""
+        """Return the cutting-edge angle at the top of the cut and its mean; round inserts follow the depth."""
         if not candidate.is_round:
             return candidate.family.kappa_deg, candidate.family.kappa_deg
         diameter = candidate.family.insert_diameter_mm or 0.0

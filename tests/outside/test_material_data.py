@@ -8,9 +8,9 @@ from pathlib import Path
 
 import pytest
 
-from millreason.material_facts import facts_of_state
-from millreason.material_text import key_of
 from millreason.materials import Ambiguous, Found, Material, find_material, load_materials, speed_pick
+from millreason.materials.facts import facts_of_state
+from millreason.materials.text import key_of
 
 ROOT = Path(__file__).parents[2]
 BOOK = load_materials(ROOT)

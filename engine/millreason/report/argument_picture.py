@@ -6,10 +6,10 @@ from collections.abc import Iterator
 from dataclasses import dataclass, field
 from html import escape
 
-from millreason import svg
-from millreason.explain_words import value_words
+from millreason.explain.words import value_words
+from millreason.report import svg
+from millreason.report.svg import INK, PALE, SIGN, TOOL, Point
 from millreason.report.words import clean, fact_words, pick_words
-from millreason.svg import INK, PALE, SIGN, TOOL, Point
 from millreason.trace import Answer, ConditionRecord, Evidence, FactRecord, FiringRecord, Ledger, OptionLedger
 
 # The picks in the order in which a reader meets them; the rest of the ledgers stands in the text.

@@ -4,14 +4,14 @@ from __future__ import annotations
 
 from dataclasses import replace
 
-from millreason.explain_words import option_words, value_words
+from millreason.explain.why import tree_lines
+from millreason.explain.words import option_words, value_words
 from millreason.explanation_records import Alternative, Assumption, Because, Explanation, Interval, Options, WhyNot
 from millreason.report.argument_picture import argument_picture
 from millreason.report.holds_chart import holds_chart
 from millreason.report.page import Fold, Item, Items, Picture, Say, Section, Table, present, section
 from millreason.report.words import clean, count, fact_words, origin_text
 from millreason.trace import Answer
-from millreason.why import tree_lines
 
 _SPACE = "\N{EN SPACE}"
 _RUN = "Every statement here about what would be was run."

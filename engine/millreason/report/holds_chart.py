@@ -5,11 +5,11 @@ from __future__ import annotations
 import math
 from collections.abc import Sequence
 
-from millreason import svg
-from millreason.explain_words import value_words
+from millreason.explain.words import value_words
 from millreason.explanation_records import Interval
+from millreason.report import svg
+from millreason.report.svg import INK, PALE, SIGN, TOOL
 from millreason.report.words import fact_words
-from millreason.svg import INK, PALE, SIGN, TOOL
 
 _LEFT, _FULL, _PITCH, _BAR = 210.0, 420.0, 30.0, 12.0
 _LONGEST_NAME = 34

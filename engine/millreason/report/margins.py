@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from millreason import charts
+from millreason.report import charts
 from millreason.report.page import Fields, Fold, Gallery, Item, Items, Picture, Section, Table, present, section
 from millreason.report.sheet import Line, steps_table
 from millreason.report.words import basis_text, clean, contact_text, fact, option, recommends

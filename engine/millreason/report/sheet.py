@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Sequence
 
-from millreason import drawings
+from millreason.report import drawings
 from millreason.report.page import (
     Fields,
     Gallery,
@@ -18,6 +18,7 @@ from millreason.report.page import (
     Tone,
     present,
 )
+from millreason.report.svg import length
 from millreason.report.words import (
     clean,
     corner_text,
@@ -29,7 +30,6 @@ from millreason.report.words import (
     option,
     rake_text,
 )
-from millreason.svg import length
 from millreason.trace import Answer, CautionRecord, Picks, PlanRecord, Step
 from millreason.units import plain, show
 

@@ -8,13 +8,13 @@ from pathlib import Path
 from typing import Any, cast
 
 from millreason.errors import OutOfRangeError
-from millreason.hardness import Converted, Scale, basis_text, convert_hardness, hardness_as_hb
-from millreason.material_book import Material, MaterialBook, State, load_book
-from millreason.material_conflicts import Contradiction, find_contradictions
-from millreason.material_facts import MaterialFact, SpeedPick, facts_of_state, notes_of_state, speed_pick
-from millreason.material_records import Group
-from millreason.material_search import Ambiguous, Found, Hint, Result, Unknown, find_material
-from millreason.material_text import key_of
+from millreason.materials.book import Material, MaterialBook, State, load_book
+from millreason.materials.conflicts import Contradiction, find_contradictions
+from millreason.materials.facts import MaterialFact, SpeedPick, facts_of_state, notes_of_state, speed_pick
+from millreason.materials.hardness import Converted, Scale, basis_text, convert_hardness, hardness_as_hb
+from millreason.materials.records import Group
+from millreason.materials.search import Ambiguous, Found, Hint, Result, Unknown, find_material
+from millreason.materials.text import key_of
 from millreason.provenance import Basis, Source
 
 __all__ = [

@@ -7,6 +7,12 @@ from dataclasses import replace
 from millreason.answer import write_answer
 from millreason.choice import Adviser
 from millreason.errors import MillreasonError, did_you_mean
+from millreason.explain.reruns import Reruns, Tick
+from millreason.explain.robustness import find_robustness
+from millreason.explain.sensitivity import find_intervals, find_options, rank_questions, weigh_assumptions
+from millreason.explain.why import Argument, why_caution, why_pick, why_verdict
+from millreason.explain.why_not import SAME_PICK, find_why_not
+from millreason.explain.why_plan import Workings
 from millreason.explanation_records import (
     Assumption,
     Because,
@@ -18,13 +24,7 @@ from millreason.explanation_records import (
 )
 from millreason.job import Job
 from millreason.report.words import pick_name
-from millreason.reruns import Reruns, Tick
-from millreason.robustness import find_robustness
-from millreason.sensitivity import find_intervals, find_options, rank_questions, weigh_assumptions
 from millreason.trace import Answer
-from millreason.why import Argument, why_caution, why_pick, why_verdict
-from millreason.why_not import SAME_PICK, find_why_not
-from millreason.why_plan import Workings
 
 _MOST_QUESTIONS = 6
 # Picks of which the report argues every other option.

@@ -9,10 +9,10 @@ from typing import TYPE_CHECKING
 from millreason.answer import verdict_of
 from millreason.choice import Adviser
 from millreason.errors import MillreasonError
+from millreason.explain.quick import quick_and_sure
 from millreason.explanation_records import Result
 from millreason.job import Given, Job, Value
 from millreason.limits import binding_limits
-from millreason.quick import quick_and_sure
 from millreason.vocabulary import Vocabulary
 
 if TYPE_CHECKING:

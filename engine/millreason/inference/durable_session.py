@@ -17,9 +17,9 @@ from collections.abc import Iterable
 
 import durable_rules_engine as durable
 
-from millreason.durable_notation import BOOT, FactWriter, Layout, write_rules
 from millreason.errors import MillreasonError, RuleSetLimitError
-from millreason.matching import Action, Fact, Firing, Ledger, RuleSet
+from millreason.inference.durable_notation import BOOT, FactWriter, Layout, write_rules
+from millreason.inference.matching import Action, Fact, Firing, Ledger, RuleSet
 
 MOST_SESSIONS = 1_000
 OPENING, CLOSING = "open", "close"

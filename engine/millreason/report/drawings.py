@@ -5,8 +5,8 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass
 
-from millreason import svg
-from millreason.svg import CENTRE_LINE, CUT, GLASS, INK, SIGN, TOOL, WORK, Point, number
+from millreason.report import svg
+from millreason.report.svg import CENTRE_LINE, CUT, GLASS, INK, SIGN, TOOL, WORK, Point, number
 from millreason.units import plain, show
 
 _FLATTEST_DRAWN_DEG = 5.0

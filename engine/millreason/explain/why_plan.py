@@ -5,12 +5,12 @@ from __future__ import annotations
 import re
 from collections.abc import Iterator, Mapping
 
-from millreason.explain_words import value_words
+from millreason.explain.why import Argument
+from millreason.explain.words import value_words
 from millreason.explanation_records import Because
 from millreason.report.words import fact_words
 from millreason.trace import Answer, Calculation, Plain
 from millreason.vocabulary import Adjustable
-from millreason.why import Argument
 
 _NAME = re.compile(r"[a-z]{3,}")
 # Words in names of quantities that say nothing of what they are: units, and which of several.

@@ -7,7 +7,7 @@ import unicodedata
 from collections.abc import Sequence
 from dataclasses import dataclass
 
-from millreason.hardness import Scale
+from millreason.materials.hardness import Scale
 
 _NUMBER = r"\d+(?:[.,]\d+)?"
 _RANGE = rf"(?P<low>{_NUMBER})(?:\s*(?:-|\u2013|to|\.\.)\s*(?P<high>{_NUMBER}))?"

@@ -6,7 +6,7 @@ from typing import Literal, TypeVar
 
 from pydantic import Field
 
-from millreason.hardness import Kind
+from millreason.materials.hardness import Kind
 from millreason.provenance import KnowledgeFile, Many, Record
 
 Group = Literal["P", "M", "K", "N", "S", "H"]

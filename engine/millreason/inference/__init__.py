@@ -14,7 +14,7 @@ from itertools import product
 from typing import Literal, Protocol
 
 from millreason.errors import MillreasonError
-from millreason.matching import (
+from millreason.inference.matching import (
     Action,
     Fact,
     Firing,
@@ -122,7 +122,7 @@ def _choices(fact: Fact, memories: list[list[Fact]], meets: list[bool]) -> Itera
 def engine_names() -> tuple[EngineName, ...]:
     """Return the engines that work here, the preferred one first."""
     try:
-        import millreason.durable_session  # noqa: F401
+        import millreason.inference.durable_session  # noqa: F401
     except ImportError:
         return ("twin",)
     return ("durable", "twin")
@@ -140,6 +140,6 @@ def make_engine(rules: Sequence[InferenceRule], prefer: EngineName | None = None
     compiled = compile_rules(rules)
     if name == "twin":
         return TwinEngine(compiled)
-    from millreason.durable_session import DurableEngine
+    from millreason.inference.durable_session import DurableEngine
 
     return DurableEngine(compiled)

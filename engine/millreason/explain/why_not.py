@@ -6,16 +6,16 @@ from collections.abc import Iterator
 
 from millreason.candidates import kappa_key, size_key
 from millreason.errors import MillreasonError, did_you_mean
-from millreason.explain_words import change_words, option_words
+from millreason.explain.nearest import find_nearest
+from millreason.explain.reruns import Reruns
+from millreason.explain.why import Argument
+from millreason.explain.words import change_words, option_words
 from millreason.explanation_records import Because, Change, Loss, Side, WhyNot
 from millreason.limits import binding_limits
-from millreason.nearest import find_nearest
 from millreason.outcome import Outcome, Tried
 from millreason.own_cutters import own_cutters
 from millreason.report.words import pick_name, pick_option
-from millreason.reruns import Reruns
 from millreason.trace import Evidence, LimitRecord
-from millreason.why import Argument
 
 SAME_PICK = {"lead": "kappa_deg", "kappa": "kappa_deg", "diameter": "diameter_mm", "class": "cutter_class"}
 _OF_THE_JOB = ("hand", "direction", "fluid", "application", "spacing")

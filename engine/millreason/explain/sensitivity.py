@@ -6,7 +6,9 @@ import math
 from collections.abc import Callable, Iterable, Iterator
 from dataclasses import replace
 
-from millreason.explain_words import (
+from millreason.explain.reruns import Reruns
+from millreason.explain.variations import Input, Span, bounds, can_vary, known_inputs, other_values, rule_lines
+from millreason.explain.words import (
     change_words,
     picks_changed,
     result_words,
@@ -15,10 +17,8 @@ from millreason.explain_words import (
 )
 from millreason.explanation_records import Alternative, Assumption, End, Interval, Options, Result
 from millreason.job import Value
-from millreason.reruns import Reruns
 from millreason.stages import plain_value
 from millreason.trace import Question
-from millreason.variations import Input, Span, bounds, can_vary, known_inputs, other_values, rule_lines
 
 _TOLD = 3
 

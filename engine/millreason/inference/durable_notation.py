@@ -17,7 +17,7 @@ from math import isqrt
 from typing import cast
 
 from millreason.errors import RuleSetLimitError
-from millreason.matching import CompiledTest, Fact, RuleSet, Scalar
+from millreason.inference.matching import CompiledTest, Fact, RuleSet, Scalar
 
 MOST_GROUPS = 480
 MOST_TESTS_AT_ONCE = 32

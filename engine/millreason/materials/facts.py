@@ -7,9 +7,9 @@ from dataclasses import dataclass
 from typing import Any, NamedTuple
 
 from millreason.errors import OutOfRangeError
-from millreason.hardness import ForceRatio, basis_text, hardness_force_ratio, interpolate, unit_power
-from millreason.material_book import Material, MaterialBook, State
-from millreason.material_records import Group, SpeedRow
+from millreason.materials.book import Material, MaterialBook, State
+from millreason.materials.hardness import ForceRatio, basis_text, hardness_force_ratio, interpolate, unit_power
+from millreason.materials.records import Group, SpeedRow
 from millreason.provenance import Basis
 
 

@@ -5,9 +5,9 @@ from __future__ import annotations
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 
-from millreason.material_book import MaterialBook, State
-from millreason.material_records import Group
-from millreason.material_search import Ambiguous, Found, Result
+from millreason.materials.book import MaterialBook, State
+from millreason.materials.records import Group
+from millreason.materials.search import Ambiguous, Found, Result
 
 
 @dataclass(frozen=True)

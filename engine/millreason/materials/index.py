@@ -8,9 +8,9 @@ from typing import Literal
 from rapidfuzz import fuzz, process
 from rapidfuzz.distance import Levenshtein
 
-from millreason.material_book import Material, MaterialBook
-from millreason.material_records import FormWords, GeneralWords, OutsideWords
-from millreason.material_text import digits_of, key_of, skeleton
+from millreason.materials.book import Material, MaterialBook
+from millreason.materials.records import FormWords, GeneralWords, OutsideWords
+from millreason.materials.text import digits_of, key_of, skeleton
 
 SHORT_KEY = 2  # keys this short are words of the shop as often as grades
 NEAR_SHOWN = 5

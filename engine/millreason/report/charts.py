@@ -6,8 +6,8 @@ import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 
-from millreason import svg
-from millreason.svg import INK, NEAR, PALE, SIGN, TOOL, Point
+from millreason.report import svg
+from millreason.report.svg import INK, NEAR, PALE, SIGN, TOOL, Point
 from millreason.units import plain
 
 _LONGEST_NAME = 36

@@ -6,10 +6,10 @@ from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, replace
 
 from millreason.errors import OutOfRangeError
-from millreason.hardness import Converted, hardness_as_hb
-from millreason.material_book import Material, MaterialBook, State
-from millreason.material_facts import speed_pick
-from millreason.material_index import (
+from millreason.materials.book import Material, MaterialBook, State
+from millreason.materials.facts import speed_pick
+from millreason.materials.hardness import Converted, hardness_as_hb
+from millreason.materials.index import (
     GROUP_RANK,
     NEAR_RANK,
     Index,
@@ -17,8 +17,8 @@ from millreason.material_index import (
     near_names,
     slip_of,
 )
-from millreason.material_records import Group
-from millreason.material_text import (
+from millreason.materials.records import Group
+from millreason.materials.text import (
     Reading,
     Token,
     digits_of,

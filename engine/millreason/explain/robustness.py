@@ -2,12 +2,12 @@
 
 from __future__ import annotations
 
-from millreason.explain_words import picks_changed, result_words, same_picks, value_words
+from millreason.explain.reruns import Reruns
+from millreason.explain.sensitivity import find_interval
+from millreason.explain.variations import Input, rule_lines, tidy
+from millreason.explain.words import picks_changed, result_words, same_picks, value_words
 from millreason.explanation_records import Alternative, Robustness
 from millreason.job import Value
-from millreason.reruns import Reruns
-from millreason.sensitivity import find_interval
-from millreason.variations import Input, rule_lines, tidy
 
 FORCE = "material.kc11_n_mm2"
 HARDNESS = "work.hardness_hb"

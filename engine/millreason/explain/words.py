@@ -5,11 +5,11 @@ from __future__ import annotations
 import math
 from collections.abc import Mapping
 
+from millreason.explain.variations import DIGITS
 from millreason.explanation_records import Result
 from millreason.job import Value
 from millreason.report.words import clean, fact_words, option, pick_words
 from millreason.units import INCH_SHOWN, convert, plain
-from millreason.variations import DIGITS
 from millreason.vocabulary import Vocabulary
 
 _ENDED = {"ask": "a question comes first", "refuse": "no cutter stands"}

@@ -7,12 +7,12 @@ from collections.abc import Iterable, Iterator
 from functools import partial
 from itertools import combinations, product
 
-from millreason.explain_words import result_words
+from millreason.explain.reruns import Changes, Reruns
+from millreason.explain.variations import Input, Span, blank_inputs, distance, known_inputs, other_values, rule_lines
+from millreason.explain.words import result_words
 from millreason.explanation_records import Change, Result
 from millreason.job import Value
-from millreason.reruns import Changes, Reruns
 from millreason.stages import plain_value
-from millreason.variations import Input, Span, blank_inputs, distance, known_inputs, other_values, rule_lines
 
 MATERIAL = "work.material"
 MOST_CHANGES = 3

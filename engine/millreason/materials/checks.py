@@ -6,8 +6,8 @@ from collections.abc import Collection, Iterator, Mapping
 from typing import TYPE_CHECKING
 
 from millreason.errors import Finding, did_you_mean
-from millreason.hardness import HardnessKnowledge
-from millreason.material_records import (
+from millreason.materials.hardness import HardnessKnowledge
+from millreason.materials.records import (
     FamilyFile,
     ForceFile,
     MaterialFile,
@@ -19,7 +19,7 @@ from millreason.material_records import (
 from millreason.yaml_source import Document, Key
 
 if TYPE_CHECKING:
-    from millreason.material_book import MaterialBook
+    from millreason.materials.book import MaterialBook
 
 # Rounded tables may miss their own nominal value by this share.
 _ROUNDING = 5e-4

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterable, Iterator
 from typing import TYPE_CHECKING
 
-from millreason.explain_words import option_words, value_words
+from millreason.explain.words import option_words, value_words
 from millreason.explanation_records import Because
 from millreason.report.words import basis_text, fact_words, option, origin_text, pick_option
 from millreason.rulebook import RuleBook, describe

@@ -10,9 +10,9 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from millreason.errors import DataError, Finding
-from millreason.hardness import HardnessKnowledge, load_hardness
-from millreason.material_checks import check_forces, check_record, check_speeds, check_words
-from millreason.material_records import (
+from millreason.materials.checks import check_forces, check_record, check_speeds, check_words
+from millreason.materials.hardness import HardnessKnowledge, load_hardness
+from millreason.materials.records import (
     ChipForm,
     Family,
     FamilyFile,
@@ -41,7 +41,7 @@ from millreason.provenance import (
 from millreason.yaml_source import Document, read_model, read_yaml
 
 if TYPE_CHECKING:
-    from millreason.material_index import Index
+    from millreason.materials.index import Index
 
 # The label of entries that stand for a whole group of materials under a trade word.
 GROUP_NAME = "group_name"
@@ -136,7 +136,7 @@ class MaterialBook:
     @cached_property
     def index(self) -> Index:
         """The index of words and names; see `material_index`."""
-        from millreason.material_index import build_index
+        from millreason.materials.index import build_index
 
         return build_index(self)
 
