@@ -12,9 +12,7 @@ KNOWLEDGE = load_knowledge()
 VOCABULARY = load_vocabulary(data_root())
 FAMILIES = KNOWLEDGE.cutters.families
 SERIES = {
-    name: sorted(
-        (size for size in KNOWLEDGE.cutters.sizes if size.series == name), key=lambda size: size.nominal_mm
-    )
+    name: sorted((size for size in KNOWLEDGE.cutters.sizes if size.series == name), key=lambda size: size.nominal_mm)
     for name in ("metric", "inch")
 }
 

@@ -131,9 +131,7 @@ def test_numbers_of_any_size_keep_their_order(kind, low):
     assert fired(kind, Test("a", "ge", low), *facts) == sorted({float(n) for n in numbers if n >= low})
 
 
-@pytest.mark.parametrize(
-    "error", [ValueError("no such table"), KeyError("x"), ZeroDivisionError(), MillreasonError()]
-)
+@pytest.mark.parametrize("error", [ValueError("no such table"), KeyError("x"), ZeroDivisionError(), MillreasonError()])
 def test_an_error_in_an_action_comes_out_with_the_rule_id(kind, brief, error):
     def fail(rule, chosen):
         raise error

@@ -127,9 +127,7 @@ def run_apart(code: str, timeout: float = 60) -> str:
     """Run code in a process of its own and return what it prints."""
     environment = {**os.environ, "PYTHONPATH": str(Path(millreason.__file__).parents[1])}
     command = [sys.executable, "-W", "error", "-c", PRELUDE + code]
-    done = subprocess.run(
-        command, capture_output=True, text=True, timeout=timeout, env=environment, check=False
-    )
+    done = subprocess.run(command, capture_output=True, text=True, timeout=timeout, env=environment, check=False)
     assert done.returncode == 0, f"ended with {done.returncode}: {done.stderr[-2000:]}"
     return done.stdout.strip()
 
@@ -224,9 +222,7 @@ def fnv(text: str) -> int:
 
 def test_no_two_names_or_ids_share_a_hash():
     sessions = [str(number) for number in range(1_000)]
-    ids = (
-        [str(number) for number in range(MOST_FACTS)] + [f"sid-{sid}" for sid in sessions] + ["open", "close"]
-    )
+    ids = [str(number) for number in range(MOST_FACTS)] + [f"sid-{sid}" for sid in sessions] + ["open", "close"]
     names = ["id", "sid", "boot", "$s", *(f"g{number}" for number in range(MOST_GROUPS))]
     names += [f"{letter}{number}" for letter in "vns" for number in range(MOST_TESTS)]
     for texts in (sessions, ids, names):
@@ -241,10 +237,7 @@ def test_no_two_names_or_ids_share_a_hash():
             "4001 rules, .* 4000",
         ),
         (
-            [
-                InferenceRule(str(n), (Test(f"a{n // 5}", "eq", n), Test(f"b{n // 5}", "eq", n)))
-                for n in range(2001)
-            ],
+            [InferenceRule(str(n), (Test(f"a{n // 5}", "eq", n), Test(f"b{n // 5}", "eq", n))) for n in range(2001)],
             "4002 different tests, .* 4000",
         ),
         (
@@ -354,9 +347,7 @@ def test_an_odd_fact_in_a_batch_loses_none_of_its_neighbours(odd):
 def test_made_facts_that_nothing_looks_at_or_that_repeat_do_not_stop_the_rest():
     rules = [InferenceRule("A", (Test("a", "eq", 1),)), InferenceRule("B", (Test("b", "ge", 1),))]
     made = [Fact("unseen", 1), Fact("b", 1), Fact("b", 1.0), Fact("a", 1), Fact("b", 0), Fact("b", 2)]
-    firings = make_engine(rules, "durable").run(
-        [Fact("a", 1)], lambda rule, chosen: made if rule == "A" else []
-    )
+    firings = make_engine(rules, "durable").run([Fact("a", 1)], lambda rule, chosen: made if rule == "A" else [])
     assert [firing.facts[0] for firing in firings] == [Fact("a", 1), Fact("b", 1), Fact("b", 2)]
     assert firings[0].made == (Fact("unseen", 1), Fact("b", 1), Fact("b", 0), Fact("b", 2))
 
@@ -390,9 +381,7 @@ def test_a_session_that_did_not_start_is_neither_deleted_nor_used_again(monkeypa
     extension = pytest.importorskip("durable_rules_engine")
     engine = make_engine([InferenceRule("R", (Test("a", "ge", 1),))], "durable")
     deleted, delete = [], extension.delete_state
-    monkeypatch.setattr(
-        extension, "delete_state", lambda handle, sid: deleted.append(sid) or delete(handle, sid)
-    )
+    monkeypatch.setattr(extension, "delete_state", lambda handle, sid: deleted.append(sid) or delete(handle, sid))
 
     def interrupt(*given):
         raise KeyboardInterrupt

@@ -34,8 +34,7 @@ def book() -> RuleBook:
 
 def trials() -> list[dict[str, Any]]:
     loaded = (
-        yaml.safe_load(path.read_text(encoding="utf-8"))
-        for path in sorted((ROOT / "tests" / "rules").glob("*.yaml"))
+        yaml.safe_load(path.read_text(encoding="utf-8")) for path in sorted((ROOT / "tests" / "rules").glob("*.yaml"))
     )
     return [entry for content in loaded for entry in content or ()]
 
@@ -118,9 +117,7 @@ def test_texts_are_sentences(rule_id: str) -> None:
         if not text:
             continue
         assert text[-1] in ".!?", f"{part} does not end a sentence: {text}"
-        assert text[0].isupper() or text[0] in "{'" or text[0].isdigit(), (
-            f"{part} begins in the middle: {text}"
-        )
+        assert text[0].isupper() or text[0] in "{'" or text[0].isdigit(), f"{part} begins in the middle: {text}"
         assert len(text.split()) <= MOST_WORDS, f"{part} is too long to be read at once: {text}"
         assert not re.search(r"\s{2}", text), f"{part} has a gap: {text}"
 

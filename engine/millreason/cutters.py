@@ -20,12 +20,8 @@ CutterClass = Literal[
     "fly_cutter",
 ]
 RakeName = Literal["double_negative", "double_positive", "positive_negative"]
-CornerName = Literal[
-    "facet", "radius_0.4", "radius_0.8", "radius_1.2", "radius_1.6", "radius_2.0", "round", "sharp"
-]
-EdgeName = Literal[
-    "sharp_polished_uncoated", "sharp_thin_coated", "honed_coated", "negative_land", "diamond", "cbn"
-]
+CornerName = Literal["facet", "radius_0.4", "radius_0.8", "radius_1.2", "radius_1.6", "radius_2.0", "round", "sharp"]
+EdgeName = Literal["sharp_polished_uncoated", "sharp_thin_coated", "honed_coated", "negative_land", "diamond", "cbn"]
 PocketsName = Literal["fixed", "cartridge"]
 ON_A_BORE = ("shell_arbor", "spindle_nose_flange")
 PITCHES: tuple[PitchName, ...] = ("coarse", "fine", "extra_fine")
@@ -152,9 +148,7 @@ class RakeOption(Record):
         signs = {"double_negative": (-1, -1), "double_positive": (1, 1), "positive_negative": (1, -1)}
         axial, radial = signs[self.rake]
         if self.axial_deg * axial <= 0 or self.radial_deg * radial <= 0:
-            raise ValueError(
-                f"{self.rake} disagrees with axial {self.axial_deg:g} and radial {self.radial_deg:g} deg"
-            )
+            raise ValueError(f"{self.rake} disagrees with axial {self.axial_deg:g} and radial {self.radial_deg:g} deg")
         return self
 
 

@@ -111,9 +111,7 @@ class Knowledge:
     def interface_names(self) -> Mapping[str, str]:
         """Every spelling of an interface in lower case, with its id."""
         entries = self.interfaces.values()
-        return {
-            name.casefold(): entry.id for entry in entries for name in (entry.id, entry.title, *entry.aliases)
-        }
+        return {name.casefold(): entry.id for entry in entries for name in (entry.id, entry.title, *entry.aliases)}
 
     def provenance_counts(self) -> dict[BasisKind, int]:
         """Count the values by what they rest on; the shop's own are counted apart."""
@@ -177,9 +175,7 @@ class _Loader:
         result: dict[str, Entry] = {}
         for index, entry in enumerate(entries):
             if entry.id in result:
-                self.add(
-                    name, (group, index, "id"), f"{entry.id!r} is used twice. Give each entry its own id."
-                )
+                self.add(name, (group, index, "id"), f"{entry.id!r} is used twice. Give each entry its own id.")
             result[entry.id] = entry
         return result
 
@@ -204,9 +200,7 @@ def load_sources(root: Path) -> dict[str, Source]:
     findings = []
     for index, entry in enumerate(read_model(document, SourcesFile).sources):
         if entry.id in result:
-            findings.append(
-                document.finding(("sources", index, "id"), f"{entry.id!r} is used twice. Keep one.")
-            )
+            findings.append(document.finding(("sources", index, "id"), f"{entry.id!r} is used twice. Keep one."))
         result[entry.id] = entry
     if findings:
         raise DataError(findings)
@@ -267,9 +261,7 @@ def _machines(
         result |= loader.by_id(name, "machines", file.machines)
         for index, machine in enumerate(file.machines):
             if machine.interface not in interfaces:
-                message = (
-                    f"unknown interface {machine.interface!r}.{did_you_mean(machine.interface, interfaces)}"
-                )
+                message = f"unknown interface {machine.interface!r}.{did_you_mean(machine.interface, interfaces)}"
                 known = f" Interfaces are in knowledge/interfaces.yaml: {', '.join(interfaces)}."
                 loader.add(name, ("machines", index, "interface"), message + known)
     return result

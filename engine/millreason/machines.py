@@ -173,9 +173,7 @@ class Machine(Record):
     speed_min_rpm: PositiveFloat | None = None
     speed_max_rpm: PositiveFloat | None = None
     speed_steps_rpm: Many[PositiveFloat] = ()
-    drive: Literal["direct", "belt", "belt_step_pulley", "geared_head", "back_gear", "hydraulic"] | None = (
-        None
-    )
+    drive: Literal["direct", "belt", "belt_step_pulley", "geared_head", "back_gear", "hydraulic"] | None = None
     efficiency: float | None = Field(default=None, gt=0, le=1)
     changer: Literal["automatic", "none"] | None = None
     changer_full_mm: PositiveFloat | None = None

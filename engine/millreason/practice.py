@@ -45,9 +45,7 @@ class PracticeValue(Record):
         """Return the figure of one case."""
         if case not in self.by:
             known = ", ".join(self.by) or "none"
-            message = (
-                f"'{self.says}' has no figure for {case!r}.{did_you_mean(case, self.by)} Cases: {known}."
-            )
+            message = f"'{self.says}' has no figure for {case!r}.{did_you_mean(case, self.by)} Cases: {known}."
             raise MillreasonError(message)
         return self.by[case]
 

@@ -68,15 +68,11 @@ class Basis(Record):
     @model_validator(mode="after")
     def _exactly_one(self) -> Self:
         given = [
-            name
-            for name in ("cited", "common_practice", "derived", "invented")
-            if getattr(self, name) is not None
+            name for name in ("cited", "common_practice", "derived", "invented") if getattr(self, name) is not None
         ]
         if len(given) != 1:
             found = ", ".join(given) or "none"
-            raise ValueError(
-                f"give exactly one of cited, common_practice, derived, invented (found: {found})"
-            )
+            raise ValueError(f"give exactly one of cited, common_practice, derived, invented (found: {found})")
         return self
 
     @property
@@ -131,16 +127,12 @@ def check_bases(document: Document, bases: Bases, sources: Mapping[str, Source],
     """
     known = [*bases, SHOP_BASIS] if shop else list(bases)
     findings = [
-        document.finding(
-            key, f"unknown basis {label!r}.{did_you_mean(label, known)} Labels are under 'bases:'."
-        )
+        document.finding(key, f"unknown basis {label!r}.{did_you_mean(label, known)} Labels are under 'bases:'.")
         for key, label in labels(document.data)
         if label not in known
     ]
     findings += [
-        _unknown_source(document, name, basis, sources)
-        for name, basis in bases.items()
-        if not _known(basis, sources)
+        _unknown_source(document, name, basis, sources) for name, basis in bases.items() if not _known(basis, sources)
     ]
     if findings:
         raise DataError(findings)
@@ -152,9 +144,7 @@ def _known(basis: Basis, sources: Mapping[str, Source]) -> bool:
 
 def _unknown_source(document: Document, name: str, basis: Basis, sources: Mapping[str, Source]) -> Finding:
     found = basis.cited.source if basis.cited else ""
-    message = (
-        f"unknown source {found!r}.{did_you_mean(found, sources)} Sources are in knowledge/sources.yaml."
-    )
+    message = f"unknown source {found!r}.{did_you_mean(found, sources)} Sources are in knowledge/sources.yaml."
     return document.finding(("bases", name, "cited", "source"), message)
 
 

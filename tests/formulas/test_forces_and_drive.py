@@ -63,8 +63,7 @@ def test_peak_torque_is_the_same_at_the_mirrored_position(teeth, share, place):
     room = 100 * (1 - share)
     arcs = [engagement.engagement_arc(100 * share, 100, room * p) for p in (place, 1 - place)]
     peaks = [
-        cutting_force.peak_torque(teeth, a.entry_deg, a.exit_deg, 3, 0.2, 45, 100, 1700, 0.25).torque_nm
-        for a in arcs
+        cutting_force.peak_torque(teeth, a.entry_deg, a.exit_deg, 3, 0.2, 45, 100, 1700, 0.25).torque_nm for a in arcs
     ]
     assert peaks[0] == pytest.approx(peaks[1], rel=1e-4)
 

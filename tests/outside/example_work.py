@@ -88,9 +88,7 @@ def _both_units(given: Given) -> dict[str, Any]:
 @works("board-review-speeds")
 def _board_review(given: Given) -> dict[str, Any]:
     return {
-        f"spindle_speed_{name}": quantity(
-            body.spindle_speed(given(name, "m/min"), given("diameter", "mm")), "1/min"
-        )
+        f"spindle_speed_{name}": quantity(body.spindle_speed(given(name, "m/min"), given("diameter", "mm")), "1/min")
         for name in ("slow", "fast")
     }
 
@@ -346,18 +344,14 @@ def _cost_of_a_part(given: Given) -> dict[str, Any]:
         cutting = math.pi * given("diameter", "mm") * given("length", "mm") / (speed * given("feed", "mm"))
         edge = life.tool_life(speed / 1000, given("constant", "m/min"), given("exponent"))
         handling, change = given("handling", "min"), given("change", "min")
-        cost = life.cost_per_part(
-            handling, cutting, change, given("edge_cost"), given("rate"), edge, counting="whole"
-        )
+        cost = life.cost_per_part(handling, cutting, change, given("edge_cost"), given("rate"), edge, counting="whole")
         results |= {f"cost_{name}": cost.total, f"rate_{name}": quantity(1 / cost.cycle_min, "1/min")}
     return results
 
 
 @works("least-cost-speed")
 def _least_cost(given: Given) -> dict[str, Any]:
-    cheapest = life.economic_life(
-        given("exponent"), given("change", "min"), given("edge_cost"), given("rate")
-    )
+    cheapest = life.economic_life(given("exponent"), given("change", "min"), given("edge_cost"), given("rate"))
     return {"speed": economic_speed(given, cheapest)}
 
 
@@ -375,9 +369,7 @@ def _extended_law(given: Given) -> dict[str, Any]:
     change, costs = given("change", "min"), (given("edge_cost"), given("rate"))
     edge = life.economic_life(given("exponent"), change, *costs)
     constant = life.extended_constant(given("constant", "m/min"), given("feed", "mm"), given("feed_exponent"))
-    speed = body.spindle_speed(
-        life.speed_for_life(edge, constant, given("exponent")), given("diameter", "mm")
-    )
+    speed = body.spindle_speed(life.speed_for_life(edge, constant, given("exponent")), given("diameter", "mm"))
     cutting = passes.pass_time(given("length", "mm"), speed * given("feed", "mm"), 1, 0.0)
     idle = given("rapid_travel", "mm") / given("rapid", "mm/min")
     idle += given("loading", "min") + given("interchange", "min")

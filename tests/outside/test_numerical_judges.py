@@ -95,9 +95,7 @@ def test_mean_power_from_the_mean_chip(cut, exponent, feed):
 def test_peak_torque_is_the_maximum_over_a_turn(cut, teeth, exponent, feed, kappa):
     """Exact: never below the largest of 1440 positions, and above it by less than the step can hide."""
     _, diameter, arc = cut
-    load = cutting_force.peak_torque(
-        teeth, arc.entry_deg, arc.exit_deg, 3, feed, kappa, diameter, 1700, exponent
-    )
+    load = cutting_force.peak_torque(teeth, arc.entry_deg, arc.exit_deg, 3, feed, kappa, diameter, 1700, exponent)
     pitch = 360 / teeth
     turned = np.concatenate([np.linspace(0, pitch, 1440), (arc.entry_deg % pitch, arc.exit_deg % pitch)])
     angles = (turned[:, None] + pitch * np.arange(teeth)[None, :]) % 360
@@ -243,9 +241,7 @@ def test_lift_against_the_plane_of_the_face(radial, axial, kappa):
 
 
 @some
-@given(
-    st.floats(0.5, 6), st.floats(0.05, 0.6), st.floats(40, 90), st.floats(15, 120), rake_angles, rake_angles
-)
+@given(st.floats(0.5, 6), st.floats(0.05, 0.6), st.floats(40, 90), st.floats(15, 120), rake_angles, rake_angles)
 def test_first_contact_against_a_turned_insert(depth, feed, kappa, entry, radial, axial):
     """First order in size over radius: the corner named touches first where it leads by 2 % of the size."""
     contact = engagement.first_contact(depth, feed, kappa, entry, radial, axial)
@@ -284,9 +280,7 @@ def test_round_insert_mean_angle(share, insert):
 
 
 @some
-@given(
-    st.lists(st.tuples(st.floats(100, 3000), st.floats(1, 60)), min_size=1, max_size=6), st.floats(0.01, 1)
-)
+@given(st.lists(st.tuples(st.floats(100, 3000), st.floats(1, 60)), min_size=1, max_size=6), st.floats(0.01, 1))
 def test_available_power_against_interpolation(steps, share):
     """Exact: numpy's interpolation through zero and the points."""
     speeds = list(np.cumsum([speed for speed, _ in steps]))

@@ -66,9 +66,7 @@ def test_reference_cut(cut):
 def test_power_is_teeth_times_force_times_speed(cut):
     """The second published form of the power, from the mean tooth force, agrees with the first."""
     given, ours = cut["given"], computed(cut["given"])
-    tooth = cutting_force.mean_tooth_force(
-        given["depth"], given["kappa"], ours["mean_chip"], ours["specific_force"]
-    )
+    tooth = cutting_force.mean_tooth_force(given["depth"], given["kappa"], ours["mean_chip"], ours["specific_force"])
     speed = body.cutting_speed(ours["speed"], given["diameter"])
     together = cutting_force.mean_tangential_force(ours["net_power"], speed)
     assert ours["teeth_in_cut"] * tooth == pytest.approx(together, rel=1e-9)

@@ -12,9 +12,7 @@ import yaml
 
 from outside.example_work import UNITS, WORK, Given
 
-EXAMPLES = yaml.safe_load(Path(__file__).with_name("worked_examples.yaml").read_text(encoding="utf-8"))[
-    "examples"
-]
+EXAMPLES = yaml.safe_load(Path(__file__).with_name("worked_examples.yaml").read_text(encoding="utf-8"))["examples"]
 
 
 def in_unit_of(computed: Any, published: Any) -> tuple[float, float]:

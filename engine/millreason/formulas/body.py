@@ -116,9 +116,7 @@ def outermost_diameter(diameter_mm: float, usable_depth_mm: float, kappa_deg: fl
     return diameter_at_depth(diameter_mm, usable_depth_mm, kappa_deg)
 
 
-def body_mass(
-    diameter_mm: float, height_mm: float, bore_mm: float, density_kg_m3: float, fill: float
-) -> float:
+def body_mass(diameter_mm: float, height_mm: float, bore_mm: float, density_kg_m3: float, fill: float) -> float:
     """Mass of a cutter body: ``rho pi/4 (D^2 - d^2) H`` times the share that pockets leave.
 
     Parameters

@@ -25,9 +25,7 @@ __all__ = [
 ]
 
 
-def maximum_chip_thickness(
-    feed_per_tooth_mm: float, kappa_deg: float, entry_deg: float, exit_deg: float
-) -> float:
+def maximum_chip_thickness(feed_per_tooth_mm: float, kappa_deg: float, entry_deg: float, exit_deg: float) -> float:
     """Thickest chip on the arc: ``fz sin kappa`` past the front, else with the larger of the end sines.
 
     Parameters
@@ -121,9 +119,7 @@ def mean_chip_thickness(
     return feed * math.sin(kappa) * 2.0 * ratio / math.radians(arc)
 
 
-def feed_for_chip_thickness(
-    chip_thickness_mm: float, kappa_deg: float, entry_deg: float, exit_deg: float
-) -> float:
+def feed_for_chip_thickness(chip_thickness_mm: float, kappa_deg: float, entry_deg: float, exit_deg: float) -> float:
     """Feed per tooth that gives a maximum chip thickness: the inverse of `maximum_chip_thickness`.
 
     Parameters

@@ -54,9 +54,7 @@ class SpeedBranch:
     exponent: float
 
 
-def specific_cutting_force(
-    kc11_n_mm2: float, exponent: float, chip_thickness_mm: float, factor: float = 1.0
-) -> float:
+def specific_cutting_force(kc11_n_mm2: float, exponent: float, chip_thickness_mm: float, factor: float = 1.0) -> float:
     """Cutting force per area of chip: ``kc = kc1.1 h^-mc K``.
 
     Parameters
@@ -226,9 +224,7 @@ def speed_factor(cutting_speed_m_min: float, branches: Sequence[SpeedBranch]) ->
     raise OutOfRangeError("cutting speed [m/min]", cutting_speed_m_min, ranges)
 
 
-def net_power(
-    depth_mm: float, width_mm: float, table_feed_mm_min: float, specific_force_n_mm2: float
-) -> float:
+def net_power(depth_mm: float, width_mm: float, table_feed_mm_min: float, specific_force_n_mm2: float) -> float:
     """Mean power at the cutter: ``Pc = ap ae vf kc / 60e6``.
 
     Parameters
@@ -345,9 +341,7 @@ def mean_tangential_force(power_kw: float, cutting_speed_m_min: float) -> float:
     return 60000.0 * power / check.positive("cutting speed [m/min]", cutting_speed_m_min)
 
 
-def mean_tooth_force(
-    depth_mm: float, kappa_deg: float, chip_thickness_mm: float, specific_force_n_mm2: float
-) -> float:
+def mean_tooth_force(depth_mm: float, kappa_deg: float, chip_thickness_mm: float, specific_force_n_mm2: float) -> float:
     """Tangential force on one tooth, mean over its arc: ``F = ap / sin kappa * hm * kc``.
 
     Parameters
@@ -384,8 +378,6 @@ def mean_tooth_force(
     ----------
     tabellenbuch-metall
     """
-    edge = check.positive("depth of cut [mm]", depth_mm) / math.sin(
-        math.radians(check.cutting_edge_angle(kappa_deg))
-    )
+    edge = check.positive("depth of cut [mm]", depth_mm) / math.sin(math.radians(check.cutting_edge_angle(kappa_deg)))
     thickness = check.positive("chip thickness [mm]", chip_thickness_mm)
     return edge * thickness * check.positive("specific cutting force [N/mm2]", specific_force_n_mm2)

@@ -139,9 +139,7 @@ def base_speed(power_kw: float, torque_nm: float) -> float:
     return 30000.0 * power / (math.pi * check.positive("torque [N.m]", torque_nm))
 
 
-def drive_curve(
-    power_kw: float, base_speed_rpm: float, speed_max_rpm: float
-) -> tuple[tuple[float, float], ...]:
+def drive_curve(power_kw: float, base_speed_rpm: float, speed_max_rpm: float) -> tuple[tuple[float, float], ...]:
     """Curve of a drive with constant torque up to its base speed and constant power above it.
 
     ``P(n) = P_rated min(1, n / n_base)``.
@@ -268,9 +266,7 @@ def best_gear(curves: Sequence[Curve], speed_rpm: float) -> GearChoice:
 
 
 def _checked_curve(points: Curve) -> list[tuple[float, float]]:
-    curve = [
-        (check.positive("speed on the curve [1/min]", n), check.positive("power [kW]", p)) for n, p in points
-    ]
+    curve = [(check.positive("speed on the curve [1/min]", n), check.positive("power [kW]", p)) for n, p in points]
     if not curve:
         raise OutOfRangeError("points of the power curve", "none", "one or more")
     for (slower, _), (faster, _) in pairwise(curve):

@@ -23,9 +23,7 @@ class PartCost:
     counting: str
 
 
-def economic_life(
-    exponent: float, change_min: float, edge_cost: float = 0.0, rate_per_min: float = 1.0
-) -> float:
+def economic_life(exponent: float, change_min: float, edge_cost: float = 0.0, rate_per_min: float = 1.0) -> float:
     """Life with the least cost: ``T = (1/n - 1) (t_change + cost / rate)``; without cost, the most output.
 
     Parameters
@@ -71,9 +69,7 @@ def economic_life(
     return slope * lost
 
 
-def tool_change_cost(
-    change_min: float, regrind_min: float, rate_per_min: float, depreciation: float
-) -> float:
+def tool_change_cost(change_min: float, regrind_min: float, rate_per_min: float, depreciation: float) -> float:
     """Cost of one tool change: ``(t_change + t_regrind) rate + depreciation``.
 
     Parameters

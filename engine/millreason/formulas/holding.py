@@ -46,9 +46,7 @@ class AxialLoad:
     lift_n: float
 
 
-def lift_force(
-    tangential_n: float, edge_normal_n: float, kappa_deg: float, inclination_deg: float
-) -> AxialLoad:
+def lift_force(tangential_n: float, edge_normal_n: float, kappa_deg: float, inclination_deg: float) -> AxialLoad:
     """Lift of the work: the pull of the inclined edge less the press of the edge-normal force.
 
     ``Ft tan lambda_s sin kappa - Fn cos kappa``.

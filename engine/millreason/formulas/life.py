@@ -170,9 +170,7 @@ def taylor_fit(speed_1_m_min: float, life_1_min: float, speed_2_m_min: float, li
     lives = [check.positive("tool life [min]", life) for life in (life_1_min, life_2_min)]
     faster, longer = math.log(speeds[1] / speeds[0]), math.log(lives[0] / lives[1])
     if longer == 0.0 or not 0.0 < faster / longer < 1.0:
-        raise OutOfRangeError(
-            "tool life [min]", life_2_min, "shorter at the faster speed, by more than speed"
-        )
+        raise OutOfRangeError("tool life [min]", life_2_min, "shorter at the faster speed, by more than speed")
     slope = faster / longer
     return TaylorLaw(slope, speeds[0] * lives[0] ** slope)
 
@@ -264,18 +262,14 @@ def break_even_speed(first: TaylorLaw, second: TaylorLaw) -> float:
     groover-manufacturing
     """
     slopes = [check.taylor_exponent(law.exponent) for law in (first, second)]
-    logs = [
-        math.log(check.positive("Taylor constant [m/min]", law.constant_m_min)) for law in (first, second)
-    ]
+    logs = [math.log(check.positive("Taylor constant [m/min]", law.constant_m_min)) for law in (first, second)]
     if slopes[0] == slopes[1]:
         raise OutOfRangeError("Taylor exponent", slopes[1], "different from the other grade's")
     exponent = (slopes[1] * logs[0] - slopes[0] * logs[1]) / (slopes[1] - slopes[0])
     return check.power_of("cutting speed [m/min]", math.e, exponent)
 
 
-def life_band(
-    cutting_speed_m_min: float, reference_speed_m_min: float, reference_life: Band, exponent: Band
-) -> Band:
+def life_band(cutting_speed_m_min: float, reference_speed_m_min: float, reference_life: Band, exponent: Band) -> Band:
     """Life away from a reference: ``T = T_ref (v_ref / vc)^(1/n)``, over the bands of T_ref and n.
 
     Parameters

@@ -164,9 +164,7 @@ def radial_rake(orthogonal_rake_deg: float, inclination_deg: float, kappa_deg: f
     ----------
     iso-3002-2
     """
-    across, along, kappa = _tangents(
-        "orthogonal rake", orthogonal_rake_deg, "inclination", inclination_deg, kappa_deg
-    )
+    across, along, kappa = _tangents("orthogonal rake", orthogonal_rake_deg, "inclination", inclination_deg, kappa_deg)
     return math.degrees(math.atan(across * math.sin(kappa) - along * math.cos(kappa)))
 
 
@@ -205,9 +203,7 @@ def axial_rake(orthogonal_rake_deg: float, inclination_deg: float, kappa_deg: fl
     ----------
     iso-3002-2
     """
-    across, along, kappa = _tangents(
-        "orthogonal rake", orthogonal_rake_deg, "inclination", inclination_deg, kappa_deg
-    )
+    across, along, kappa = _tangents("orthogonal rake", orthogonal_rake_deg, "inclination", inclination_deg, kappa_deg)
     return math.degrees(math.atan(across * math.cos(kappa) + along * math.sin(kappa)))
 
 

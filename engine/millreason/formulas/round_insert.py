@@ -57,9 +57,7 @@ def round_insert_angle(depth_mm: float, insert_diameter_mm: float) -> RoundInser
     return RoundInsertAngle(top, top / 2.0)
 
 
-def round_insert_effective_diameter(
-    outside_diameter_mm: float, insert_diameter_mm: float, depth_mm: float
-) -> float:
+def round_insert_effective_diameter(outside_diameter_mm: float, insert_diameter_mm: float, depth_mm: float) -> float:
     """Diameter at the top of the cut with round inserts: ``De = D_out - d + 2 sqrt(ap (d - ap))``.
 
     Parameters

@@ -330,9 +330,7 @@ def tilted_land_roughness(feed_mm: float, tilt_deg: float) -> float:
     ----------
     own derivation
     """
-    tilt = check.inside(
-        "tilt of the land [deg]", check.not_negative("tilt of the land [deg]", tilt_deg), -1, 90
-    )
+    tilt = check.inside("tilt of the land [deg]", check.not_negative("tilt of the land [deg]", tilt_deg), -1, 90)
     return 1000.0 * check.positive("feed [mm]", feed_mm) * math.tan(math.radians(tilt))
 
 

@@ -22,9 +22,7 @@ class TiltWindow:
         return self.largest_mm_m is None or self.least_mm_m <= self.largest_mm_m
 
 
-def tilt_dish(
-    tilt_mm_m: float, diameter_mm: float, width_mm: float, entry_gap_mm: float | None = None
-) -> float:
+def tilt_dish(tilt_mm_m: float, diameter_mm: float, width_mm: float, entry_gap_mm: float | None = None) -> float:
     """Depth of the dish that a tilt along the feed leaves.
 
     ``sin theta (sqrt(R^2 - y_min^2) - sqrt(R^2 - y_max^2))``.
@@ -63,9 +61,7 @@ def tilt_dish(
     ----------
     own derivation
     """
-    return _sine(check.not_negative("tilt [mm/m]", tilt_mm_m)) * _arc_depth(
-        diameter_mm, width_mm, entry_gap_mm
-    )
+    return _sine(check.not_negative("tilt [mm/m]", tilt_mm_m)) * _arc_depth(diameter_mm, width_mm, entry_gap_mm)
 
 
 def trailing_lift(tilt_mm_m: float, diameter_mm: float) -> float:

@@ -50,9 +50,7 @@ class DurableEngine:
             session.start()
             session.fire_all(ledger)
         except durable.error as cause:
-            raise MillreasonError(
-                f"The durable engine failed: {cause}. Use the twin, and report this."
-            ) from cause
+            raise MillreasonError(f"The durable engine failed: {cause}. Use the twin, and report this.") from cause
         finally:
             self._give_back(session)
         return ledger.firings()
@@ -120,9 +118,7 @@ class _Session:
             if new := ledger.fire(int(rule), facts):
                 self._assert(self._written(new))
         if last != CLOSING:
-            raise MillreasonError(
-                "The durable engine lost facts of a session. Use the twin, and report this."
-            )
+            raise MillreasonError("The durable engine lost facts of a session. Use the twin, and report this.")
 
     def _boot(self, fact_id: str) -> str:
         return f'{{"id":"{fact_id}","sid":"{self.sid}","{BOOT}":1}}'
