@@ -16,7 +16,7 @@ def count_lines(subject: Subject) -> list[str]:
     stages = Counter(rule.stage for rule in rules)
     topics = Counter(subject.book.topics[rule.id] for rule in rules)
     bases = Counter(rule.basis.kind for rule in rules)
-    knowledge = subject.adviser.knowledge.provenance_counts()
+    knowledge = dict(subject.adviser.provenance)
     return [
         f"{len(rules)} rules in {len(topics)} topics",
         f"  by stage: {_listed(stages, STAGES)}",
