@@ -124,7 +124,10 @@ def _from_facts(adviser: Adviser, out: Outcome, chosen: Tried) -> Iterator[Check
             value = use * limit if limit else use
         if limit is None:
             limit = value / use if value_fact and use else 1.0
-        yield Check(name, key, value, limit, unit, use * 100, _verdict(use), by)
+        verdict = _verdict(use)
+        if key == "changer_full" and verdict == "over" and (known("plan.changer_empty_use") or 2.0) <= 1:
+            verdict = "near"  # it goes with empty neighbours
+        yield Check(name, key, value, limit, unit, use * 100, verdict, by)
 
 
 def _check(name: str, key: str, value: float, limit: float, unit: str, by: str) -> Check:

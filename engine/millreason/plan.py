@@ -126,7 +126,8 @@ class Planner:
         limit = self._depth_limit(candidate)
         least = int(self._tuning.get("layers_least", 1))
         finish = min(self._tuning.get("finishing_depth_mm", self._number("finishing_depth_mm")), limit)
-        if stage == "finishing" or (stage == "roughing_and_finishing" and stock <= finish + _TINY):
+        # A roughing layer thinner than the finishing layer would be no roughing at all.
+        if stage == "finishing" or (stage == "roughing_and_finishing" and stock < 2 * finish - _TINY):
             count = max(math.ceil(stock / limit - _TINY), least)
             return (0, 0.0), (count, stock / count)
         if stage == "roughing":
