@@ -147,15 +147,24 @@ def _lost(answer: Answer) -> Section | None:
     tried = answer.trace.candidates
     rejected = [candidate for candidate in tried if candidate.outcome == "rejected"]
     runners = answer.runners_up or [candidate for candidate in tried if candidate.outcome == "stands"]
-    if not runners and not rejected:
+    if not runners and not rejected and answer.existing is None:
         return None
     told = Say(
         f"{answer.trace.candidates_possible} complete tools came up, best first; "
         f"{len(tried)} of those that were planned and judged are kept here."
     )
     second = Items(tuple(_runner(candidate, answer.units) for candidate in runners), title="Runners-up")
-    blocks = present(told, second, _rejected(rejected, answer.units) if rejected else None)
+    in_use = None if answer.existing is None else _in_use(answer.existing, answer.units)
+    blocks = present(told, in_use, second, _rejected(rejected, answer.units) if rejected else None)
     return section("lost", "Why the others lost", blocks)
+
+
+def _in_use(candidate: CandidateRecord, units: str) -> Items:
+    """Say how the cutter in use would do: as a runner-up, or with every limit it breaks."""
+    broken = tuple(f"{clean(limit.text)} [{clean(limit.rule)}]" for limit in candidate.limits)
+    item = _runner(candidate, units)
+    outcome = "it breaks a limit" if broken else "it would do"
+    return Items((Item(item.text, (*broken, *item.details), outcome),), title="The cutter in use")
 
 
 def _runner(candidate: CandidateRecord, units: str) -> Item:
