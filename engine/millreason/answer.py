@@ -96,7 +96,7 @@ def _summary(out: Outcome, verdict: Verdict, chosen: Tried | None) -> str:
         else chosen.candidate.label
     )
     if verdict == "conditional":
-        return f"{words}: held back until the conditions are confirmed; no cutting data before that."
+        return f"{words}; no cutting data before that."
     layout = chosen.plan.layout
     passes = "one pass" if layout.passes == 1 else f"{layout.passes} passes side by side"
     layers = "one layer" if chosen.plan.layers == 1 else f"{chosen.plan.layers} layers in depth"
