@@ -31,7 +31,7 @@ if TYPE_CHECKING:
     from millreason.outcome import Outcome
     from millreason.spindle import Spindle
 
-_MOST_REMEMBERED = 20_000
+_MOST_REMEMBERED = 5_000
 _MOST_PLANS = 3_000
 _Plans = defaultdict[tuple[Hashable, ...], "list[tuple[dict[str, Any], Plan, dict[str, Any]]]"]
 
@@ -42,17 +42,17 @@ _MADE: WeakKeyDictionary[Adviser, tuple[QuickAdviser, QuickAdviser]] = WeakKeyDi
 class QuickAdviser(Adviser):
     """Decides like the adviser it is made from, only as far as the best candidate, and without texts.
 
-    It runs the rules on the plain engine and remembers firings; a `sure` one runs them anew on the adviser's own.
+    It runs the rules on the plain engine; one made with a quick adviser beside it, on the engine of the adviser itself.
     """
 
     runners_up = 0
 
-    def __init__(self, adviser: Adviser, sure: QuickAdviser | None = None) -> None:
-        engine = adviser.engine if sure is not None else "twin"
+    def __init__(self, adviser: Adviser, beside: QuickAdviser | None = None) -> None:
+        engine = adviser.engine if beside is not None else "twin"
         super().__init__(adviser.knowledge, adviser.materials, adviser.vocabulary, adviser.rulebook, engine)
         self.materials = _RememberedMaterials(adviser.materials)  # type: ignore[assignment]
-        self._plans: _Plans = sure._plans if sure is not None else defaultdict(list)
-        self._compiled = adviser.stages if sure is not None else None
+        self._plans: _Plans = beside._plans if beside is not None else defaultdict(list)
+        self._compiled = adviser.stages if beside is not None else None
 
     def search(self, out: Outcome, spindle: Spindle) -> Search:
         """Return a search that shares its plans with all searches before it."""
@@ -63,16 +63,15 @@ class QuickAdviser(Adviser):
     @cached_property
     def stages(self) -> Mapping[str, Stage]:
         """The compiled stages, telling no more than which rules fired."""
-        if self._compiled is not None:
-            return {name: _QuietStage(stage) for name, stage in self._compiled.items()}
-        return {name: _RememberingStage(stage) for name, stage in super().stages.items()}
+        compiled = self._compiled if self._compiled is not None else super().stages
+        return {name: _QuickStage(stage) for name, stage in compiled.items()}
 
 
 def quick_and_sure(adviser: Adviser) -> tuple[QuickAdviser, QuickAdviser]:
-    """Return the advisers for re-runs: one that remembers, and one that runs the rules on the adviser's own engine."""
+    """Return the advisers for re-runs: one on the plain engine, and one on the adviser's own."""
     if adviser not in _MADE:
         quick = QuickAdviser(adviser)
-        _MADE[adviser] = quick, QuickAdviser(adviser, sure=quick)
+        _MADE[adviser] = quick, QuickAdviser(adviser, quick)
     return _MADE[adviser]
 
 
@@ -139,16 +138,32 @@ class _Telling:
     def of(self, value: Any) -> Hashable:
         if self.raw or value is None or isinstance(value, str | bool | tuple):
             return value  # type: ignore[no-any-return]
+        # Even places are between the numbers, odd ones on them.
         place = bisect_left(self.numbers, value)
-        return place, place < len(self.numbers) and self.numbers[place] == value
+        return 2 * place + (place < len(self.numbers) and self.numbers[place] == value)
 
 
-class _QuietStage(Stage):
-    """A compiled stage that writes records without texts."""
+class _QuickStage(Stage):
+    """A compiled stage that fires once for all situations its tests cannot tell apart, and writes no texts."""
 
     def __init__(self, stage: Stage) -> None:
         self.__dict__.update(stage.__dict__)
+        self._tellings = dict(_tellings(self.rules.values()))
+        self._found: dict[Hashable, tuple[Firing, ...]] = {}
+        # Of a firing only the rule is looked at, so one stands for all of its rule.
+        self._one_of: dict[str, Firing] = {}
         self._records: dict[str, FiringRecord] = {}
+
+    def run(self, situation: Situation) -> list[Firing]:
+        """Return the firings for a situation; those for one that meets the same tests are remembered."""
+        key = tuple([telling.of(situation.value(name)) for name, telling in self._tellings.items()])
+        found = self._found.get(key)
+        if found is None:
+            if len(self._found) >= _MOST_REMEMBERED:
+                self._found.clear()
+            fired = super().run(situation)
+            found = self._found[key] = tuple(self._one_of.setdefault(firing.rule, firing) for firing in fired)
+        return list(found)
 
     def record(self, firing: Firing, situation: Situation, system: str, about: str = "") -> FiringRecord:
         """Return the record of a rule without its texts."""
@@ -167,25 +182,6 @@ class _QuietStage(Stage):
     def limit(self, rule: str, spec: RejectSpec, situation: Situation, system: str) -> LimitRecord:
         """Return a limit with its key alone."""
         return LimitRecord(spec.limit, "", None, None, rule, [])
-
-
-class _RememberingStage(_QuietStage):
-    """A stage that fires once for all situations which its tests cannot tell apart."""
-
-    def __init__(self, stage: Stage) -> None:
-        super().__init__(stage)
-        self._tellings = dict(_tellings(self.rules.values()))
-        self._firings: dict[Hashable, list[Firing]] = {}
-
-    def run(self, situation: Situation) -> list[Firing]:
-        """Return the firings for a situation; those for one that meets the same tests are remembered."""
-        key = tuple([telling.of(situation.value(name)) for name, telling in self._tellings.items()])
-        found = self._firings.get(key)
-        if found is None:
-            if len(self._firings) >= _MOST_REMEMBERED:
-                self._firings.clear()
-            found = self._firings[key] = super().run(situation)
-        return found
 
 
 def _tellings(rules: Iterable[Rule]) -> Iterator[tuple[str, _Telling]]:
