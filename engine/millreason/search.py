@@ -33,6 +33,7 @@ class Search:
         self._interface = knowledge.interfaces[out.situation.value("machine.interface")]
         self._meter = Meter(out.situation, knowledge.practice, knowledge.cutters, self._interface, spindle)
         self._planner = Planner(out.situation, out.tuning.values, knowledge.practice, spindle)
+        self._best: float | None = None
         out.spindle, out.meter = spindle, self._meter
 
     def run(self, only: Mapping[str, str]) -> None:
@@ -48,6 +49,8 @@ class Search:
             if dead.isdisjoint(_kin(candidate)):
                 tried = self._try(candidate)
                 (out.rejected if tried.limits else out.stands).append(tried)
+                if not tried.limits and (self._best is None or tried.standing > self._best):
+                    self._best = tried.standing
                 dead.update(self._ruled_out_with(tried))
                 if self._best is not None and candidate.evidence <= self._best:
                     # From here on only runners-up of other bodies and sizes are of interest.
@@ -67,10 +70,6 @@ class Search:
             )
             return iter(made)
         return Catalogue(cutters, out.ledgers, out.job.units, offered, only).best_first(dead)
-
-    @property
-    def _best(self) -> float | None:
-        return max((tried.standing for tried in self._out.stands), default=None)
 
     def _settled(self, candidate: Candidate) -> bool:
         """Whether no candidate from here on can beat the best, and enough runners-up are known."""

@@ -32,7 +32,7 @@ if TYPE_CHECKING:
     from millreason.spindle import Spindle
 
 _MOST_REMEMBERED = 5_000
-_MOST_PLANS = 3_000
+_MOST_PLANS = 6_000
 _Plans = defaultdict[tuple[Hashable, ...], "list[tuple[dict[str, Any], Plan, dict[str, Any]]]"]
 
 
