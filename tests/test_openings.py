@@ -18,7 +18,8 @@ ONE_PASS = PLATE.replace("quantity: 10", "one_pass: yes")
 WIDE = ONE_PASS.replace("width: 120 mm", "width: 105 mm")
 CORNER = SHOULDER.replace("corner_radius: 1 mm", "corner_radius: 0.3 mm")
 SHELF = PLATE.replace("open_face", "shoulder") + "cutters: [{id: X, diameter: 63 mm, teeth: 5, kappa: 45 deg}]"
-REFUSED = {"one pass": WIDE, "corner": CORNER, "shelf": SHELF}
+DUST = PLATE.replace("C45, hardness: 190 HB", "CuBe2").replace("[air, flood]", "[air]")
+REFUSED = {"one pass": WIDE, "corner": CORNER, "shelf": SHELF, "dust": DUST}
 
 
 def answered(text: str) -> tuple[Outcome, Answer]:
@@ -67,6 +68,16 @@ def test_no_smaller_change_of_a_number_opens_a_way(name: str) -> None:
     for fact, value in found:
         back = 1 + 3 * TOLERANCE if fact in LESS_IS_EASIER else 1 - 3 * TOLERANCE
         assert not adviser().decide(out.job.with_value(fact, value * back)).stands, fact
+
+
+def test_a_fluid_that_is_missing_is_added_to_those_at_hand() -> None:
+    _, answer = answered(DUST)
+    assert answer.refusal is not None
+    added = [
+        opening.change["machine.fluids"] for opening in answer.refusal.openings if "machine.fluids" in opening.change
+    ]
+    assert added
+    assert all("air" in fluids and len(fluids) == 2 for fluids in added)
 
 
 def test_a_refusal_names_what_binds() -> None:
