@@ -8,7 +8,7 @@ from dataclasses import replace
 from itertools import combinations
 from typing import TYPE_CHECKING, Any
 
-from millreason.explain.variations import DIGITS, tidy
+from millreason.explain.variations import DIGITS, Input, other_values, tidy
 from millreason.explain.words import value_words
 from millreason.job import Job
 from millreason.trace import LimitRecord, Opening
@@ -92,8 +92,10 @@ class _Openings:
         if definition.kind == "flag":
             turned = not current
             return turned if current is not None and self._opens(job.with_value(fact, turned)) else None
-        if definition.kind == "choice":
-            options = (option for option in definition.options if option != current)
+        if definition.kind in ("choice", "choices"):
+            options = other_values(Input(fact, definition, current, "given"))
+            # What is added to the things at hand comes before what takes their place.
+            options.sort(key=lambda option: not (isinstance(option, tuple) and set(current or ()) < set(option)))
             return next((option for option in options if self._opens(job.with_value(fact, option))), None)
         if not isinstance(current, int | float) or isinstance(current, bool):
             return None
