@@ -11,6 +11,7 @@ from typing import TYPE_CHECKING, Any
 from millreason.explain.variations import DIGITS, Input, other_values, tidy
 from millreason.explain.words import value_words
 from millreason.job import Job
+from millreason.stages import plain_value
 from millreason.trace import LimitRecord, Opening
 
 if TYPE_CHECKING:
@@ -73,7 +74,8 @@ class _Openings:
         outcome = self._adviser.decide(job)
         if outcome.must_ask or outcome.limits or not outcome.stands:
             return None
-        return Opening(changes, text, outcome.stands[0].candidate.label)
+        told = {fact: plain_value(value) for fact, value in changes.items()}
+        return Opening(told, text, outcome.stands[0].candidate.label)
 
     def _single(self, fact: str) -> Opening | None:
         value = self._smallest(self._out.job, fact)
