@@ -158,3 +158,13 @@ def test_a_slip_is_a_line_and_not_a_traceback(job: str, arguments: tuple[str, st
 def test_choose_with_argue_holds_the_argument_in_any_form(job: str) -> None:
     assert '"intervals"' in run("choose", job, "--argue", "--form", "json")
     assert 'id="holds"' in run("choose", job, "--argue", "--form", "html")
+
+
+def test_what_is_held_back_stays_back_in_the_argument() -> None:
+    answer = explained(PLATE.replace("C45, hardness: 190 HB", "AZ91"))
+    assert answer.verdict == "conditional"
+    assert answer.explanation is not None
+    assert not answer.explanation.intervals
+    text = render(answer, "html")
+    assert 'id="because"' not in text
+    assert 'id="holds"' not in text

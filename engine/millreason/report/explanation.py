@@ -10,7 +10,7 @@ from millreason.explanation_records import Alternative, Assumption, Because, Exp
 from millreason.report.argument_picture import argument_picture
 from millreason.report.holds_chart import holds_chart
 from millreason.report.page import Fold, Item, Items, Picture, Say, Section, Table, present, section
-from millreason.report.words import clean, count, fact_words, origin_text
+from millreason.report.words import clean, count, fact_words, origin_text, recommends
 from millreason.trace import Answer
 
 _SPACE = "\N{EN SPACE}"
@@ -48,7 +48,7 @@ def _placed(after: str, part: Section | None) -> Section | None:
 
 # ---------------------------------------------------------------------- how the picks follow
 def _because(answer: Answer, argued: Explanation) -> Section | None:
-    if answer.picks is None:
+    if not recommends(answer):
         return None
     picture = argument_picture(answer)
     told = "From what is known, over the rules that decided, to the picks; red: what speaks against the next best"
