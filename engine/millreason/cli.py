@@ -8,7 +8,7 @@ from typing import Any
 import click
 
 from millreason import __version__
-from millreason.cli_explain import COMMANDS, argued
+from millreason.cli_explain import COMMANDS, argued, progress
 from millreason.cli_lists import machines, materials, rules
 from millreason.console import SHOP, guarded, in_colour, load, page_width, say, write
 
@@ -72,7 +72,11 @@ def choose(
     from millreason.report import render
 
     adviser = load(shop, engine)
-    answer = argued(adviser, job) if argue or full else adviser.choose_file(job)
+    if argue or full:
+        answer = argued(adviser, job)
+    else:
+        with progress():  # a refusal is run again with changed inputs, which may take some seconds
+            answer = adviser.choose_file(job)
     colour = out is None and in_colour()
     text = render(answer, form, full=full, width=page_width(), colour=colour)
     if out is None:
