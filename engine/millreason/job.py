@@ -243,7 +243,9 @@ class _Reader:
             self.inch += 1
         elif quantity.unit not in SHARED_UNITS:
             self.metric += 1
-        return Given(convert(quantity.value, quantity.unit, unit), str(raw), unit, line)
+        # Ten figures take away what the conversion leaves, so that 2 in is 50.8 mm and not a hair off a threshold.
+        value = float(f"{convert(quantity.value, quantity.unit, unit):.10g}")
+        return Given(value, str(raw), unit, line)
 
     def _choice(self, definition: FactDefinition, fact: str, raw: Any) -> str:
         word = str(raw).strip()
