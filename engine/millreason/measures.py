@@ -190,7 +190,7 @@ class Meter:
             "depth_use": max(load.depth_mm for load in plan.loads) / plan.candidate.family.usable_depth_mm,
             "first_layer_to_skin": first.depth_mm / skin if (skin := self._fact("work.skin_depth_mm")) else None,
             "uncovered": bool(layout.one_pass and self._fact("work.width_mm") > layout.width_mm + 1e-6),
-            "entry": ("helix" if self._fact("work.length_mm") < 3 * plan.candidate.outermost_mm else "ramp")
+            "entry": ("helix" if self._fact("work.length_mm") < self._number("ramp_room") * outermost else "ramp")
             if pocket
             else "from_outside",
             "time_min": self.time(plan),
